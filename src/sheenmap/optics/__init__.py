@@ -1,0 +1,9 @@
+"""Stack to reflectance.
+
+Conventions of this room: fields go as exp(+iwt), so an index is n - ik with k >= 0; layers are listed as the light meets
+them; lengths are in nm, wavelength is the last axis (W); angles are in radians inside and in degrees in ``View``.
+"""
+
+from sheenmap.optics.stack import Back, Layer, Polarisation, Stack, View
+
+__all__ = ["Back", "Layer", "Polarisation", "Stack", "View"]
