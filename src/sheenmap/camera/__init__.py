@@ -1,5 +1,10 @@
 """Picture to linear signal, with its variance."""
 
-from sheenmap.camera.encoding import Encoding, decode, encode, parse_encoding_name
+from sheenmap.camera.encoding import Encoding, code_step, decode, encode, parse_encoding_name
+from sheenmap.camera.noise import Noise, Rounding, estimate_noise, stated_noise
+from sheenmap.camera.signal import Frame, Signal, linear_frame, relative_signal
 
-__all__ = ["Encoding", "decode", "encode", "parse_encoding_name"]
+__all__ = [
+    "Encoding", "Frame", "Noise", "Rounding", "Signal",
+    "code_step", "decode", "encode", "estimate_noise", "linear_frame", "parse_encoding_name", "relative_signal", "stated_noise",
+]  # fmt: skip

@@ -63,3 +63,18 @@ def encode(encoding: Encoding, linear: FloatArray, full_scale: float) -> FloatAr
     if encoding.code is None or encoding.linear is None:
         raise ValueError("an encoding of kind 'curve' needs code and linear")
     return np.interp(linear, encoding.linear, encoding.code)
+
+
+def code_step(encoding: Encoding, linear: FloatArray, full_scale: float) -> FloatArray:
+    """Width of one code in linear units at ``linear`` (any shape, 0 to 1): what rounding to whole codes costs there."""
+    level = np.clip(linear, 0.0, 1.0)
+    if encoding.kind == "linear":
+        return np.full(level.shape, 1.0 / full_scale)
+    if encoding.kind == "srgb":
+        steep = 2.4 / 1.055 * np.maximum(level, SRGB_BREAK_ENCODED / 12.92) ** (1.4 / 2.4)
+        return np.where(level <= SRGB_BREAK_ENCODED / 12.92, 1 / 12.92, steep) / full_scale
+    if encoding.kind == "power":
+        return encoding.gamma * np.maximum(level, 1e-6) ** (1 - 1 / encoding.gamma) / full_scale
+    if encoding.code is None or encoding.linear is None:
+        raise ValueError("an encoding of kind 'curve' needs code and linear")
+    return np.interp(level, encoding.linear, np.gradient(encoding.linear, encoding.code))

@@ -1,0 +1,206 @@
+"""The camera's noise: read, shot and rounding, measured from a picture where nobody tells it.
+
+A picture of a film is smooth between its edges, so that high differences between neighbours hold noise and nothing else.
+Fourth differences (1, -4, 6, -4, 1) cancel cubic shading and slow fringes; their mean square over the weights' sum of
+squares, 70, is the variance of white noise. Noise that a camera has smoothed or a JPEG has thinned is stronger at wider
+spacing; then the wide spacing is what a pixel's error is made of.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sheenmap.arrays import FloatArray
+from sheenmap.camera.encoding import Encoding, code_step
+
+FOURTH_DIFFERENCE = (1.0, -4.0, 6.0, -4.0, 1.0)
+SQUARED_WEIGHTS = 70.0
+TILE = 8
+WIDE_SPACING = 3
+CORRELATED_RATIO = 1.15  # wide over narrow variance; white noise on 100 tiles stays under it with odds above 0.999
+SMALLEST_SHARE_OF_ROUNDING = 3.0  # below, noise is finer than a code and rounding is no longer an independent twelfth
+LARGEST_SHARE_OF_EDGES = 2.0  # tiles above this multiple of their level's median hold an edge, dust or a scratch
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Rounding:
+    """The codes that a picture is rounded to."""
+
+    encoding: Encoding
+    full_scale: float
+
+    def variance(self, level: NDArray[np.floating]) -> NDArray[np.floating]:
+        """Variance of rounding at linear levels (...,): one twelfth of the code's width squared."""
+        width = code_step(self.encoding, np.asarray(level, dtype=float), self.full_scale)
+        return np.asarray(width * width / 12)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Noise:
+    """Variance of a channel's linear value y (full scale is 1): ``read_variance + shot * y`` and rounding to codes.
+
+    Parameters
+    ----------
+    read_variance, shot : (3,) float
+        Full-scale units squared, and full-scale units.
+    rounding : Rounding or None
+        The codes that the picture was rounded to; None for a float picture.
+    correlation : (3, 3) float
+        Between channels; the unit matrix for an ordinary sensor, not for a JPEG with thinned colour.
+    spread : float
+        Variance of a mean of many neighbours over what white noise would leave, 1 for white noise.
+    """
+
+    read_variance: FloatArray
+    shot: FloatArray
+    correlation: FloatArray
+    rounding: Rounding | None = None
+    spread: float = 1.0
+
+    def variance(self, level: NDArray[np.floating]) -> NDArray[np.floating]:
+        """Variance at linear levels (..., 3)."""
+        dtype = level.dtype
+        result: NDArray[np.floating] = self.read_variance.astype(dtype) + self.shot.astype(dtype) * np.maximum(level, 0)
+        return result if self.rounding is None else result + self.rounding.variance(level).astype(dtype)
+
+
+def stated_noise(full_well_e: float, read_noise_e: float, *, rounding: Rounding | None = None) -> Noise:
+    """The noise that a data sheet gives: electrons at full scale and rms read noise in electrons (EMVA 1288)."""
+    return Noise(
+        read_variance=np.full(3, (read_noise_e / full_well_e) ** 2),
+        shot=np.full(3, 1.0 / full_well_e),
+        correlation=np.eye(3),
+        rounding=rounding,
+    )
+
+
+def estimate_noise(
+    linear: NDArray[np.floating], *, usable: NDArray[np.bool_] | None = None, rounding: Rounding | None = None
+) -> Noise:
+    """Noise of one picture, from its own fourth differences.
+
+    Parameters
+    ----------
+    linear : (H, W, 3) float
+        Linear values, full scale 1, not clipped where ``usable``.
+    usable : (H, W) bool or None
+        False where values are clipped.
+
+    Notes
+    -----
+    Tiles are sorted by level; in each level the tiles without an edge give the variance, and a straight line through
+    the levels the read and shot noise. A tile's variance has a relative standard error of about 0.2.
+    """
+    narrow = _tiles(linear, 1, usable)
+    wide = _tiles(linear, WIDE_SPACING, usable)
+    if narrow is None or wide is None:
+        return Noise(read_variance=np.zeros(3), shot=np.zeros(3), correlation=np.eye(3), rounding=rounding)
+    ratio = _ratio(narrow, wide)
+    chosen = wide if ratio > CORRELATED_RATIO else narrow
+    keep = _without_edges(chosen)
+    lines = [_line(chosen.level[keep, c], chosen.covariance[keep, c, c], rounding) for c in range(3)]
+    read_variance, shot = np.transpose(lines)
+    spread = ratio if ratio > CORRELATED_RATIO else 1.0
+    correlation = _correlation(chosen, keep)
+    return Noise(read_variance=read_variance, shot=shot, correlation=correlation, rounding=rounding, spread=spread)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class _Tiles:
+    level: FloatArray  # (N, 3)
+    covariance: FloatArray  # (N, 3, 3)
+
+
+def _tiles(linear: NDArray[np.floating], spacing: int, usable: NDArray[np.bool_] | None) -> _Tiles | None:
+    sums, counts, level = 0.0, 0.0, 0.0
+    height, width = linear.shape[:2]
+    if min(height, width) < 4 * spacing + TILE:
+        return None
+    for axis in (0, 1):
+        difference = _fourth_difference(linear, spacing, axis)
+        trimmed = _trimmed(linear, spacing, axis)
+        good = np.ones(difference.shape[:2]) if usable is None else _all_usable(usable, spacing, axis).astype(float)
+        pairs = np.stack([difference[..., i] * difference[..., j] for i in range(3) for j in range(3)], axis=-1)
+        crop = (slice(0, (height - 4 * spacing) // TILE * TILE), slice(0, (width - 4 * spacing) // TILE * TILE))
+        sums = sums + _tile_sums(pairs[crop] * good[crop][..., None])
+        counts = counts + _tile_sums(good[crop][..., None])
+        level = level + _tile_sums(trimmed[crop] * good[crop][..., None])
+    full = counts[..., 0] >= TILE * TILE
+    if not np.any(full):
+        return None
+    covariance = (sums / np.maximum(counts, 1))[full].reshape(-1, 3, 3) / SQUARED_WEIGHTS
+    return _Tiles(level=(level / np.maximum(counts, 1))[full], covariance=covariance)
+
+
+def _fourth_difference(linear: NDArray[np.floating], spacing: int, axis: int) -> FloatArray:
+    length = linear.shape[axis] - 4 * spacing
+    total = sum(
+        weight * _along(linear, axis, k * spacing, length) for k, weight in enumerate(FOURTH_DIFFERENCE)
+    )
+    other = 1 - axis
+    return np.asarray(_along(np.asarray(total), other, 2 * spacing, linear.shape[other] - 4 * spacing), dtype=float)
+
+
+def _trimmed(linear: NDArray[np.floating], spacing: int, axis: int) -> NDArray[np.floating]:
+    inner = _along(linear, axis, 2 * spacing, linear.shape[axis] - 4 * spacing)
+    return _along(inner, 1 - axis, 2 * spacing, linear.shape[1 - axis] - 4 * spacing)
+
+
+def _all_usable(usable: NDArray[np.bool_], spacing: int, axis: int) -> NDArray[np.bool_]:
+    length = usable.shape[axis] - 4 * spacing
+    every = np.logical_and.reduce([_along(usable, axis, k * spacing, length) for k in range(5)])
+    return _along(every, 1 - axis, 2 * spacing, usable.shape[1 - axis] - 4 * spacing)
+
+
+def _along(array: NDArray, axis: int, start: int, length: int) -> NDArray:  # type: ignore[type-arg]
+    return array[start : start + length] if axis == 0 else array[:, start : start + length]
+
+
+def _tile_sums(values: FloatArray) -> FloatArray:
+    height, width, depth = values.shape
+    tiles = values.reshape(height // TILE, TILE, width // TILE, TILE, depth)
+    return np.asarray(tiles.sum(axis=(1, 3)))
+
+
+def _ratio(narrow: _Tiles, wide: _Tiles) -> float:
+    medians = [np.median(np.trace(tiles.covariance, axis1=1, axis2=2)) for tiles in (wide, narrow)]
+    return float(medians[0] / medians[1]) if medians[1] > 0 else 1.0
+
+
+def _without_edges(tiles: _Tiles) -> NDArray[np.bool_]:
+    """Tiles whose variance is no more than noise of their level gives: neighbours in level serve as the yardstick."""
+    variance = np.trace(tiles.covariance, axis1=1, axis2=2)
+    order = np.argsort(tiles.level.sum(axis=1), kind="stable")
+    yardstick = np.empty_like(variance)
+    for part in np.array_split(order, max(1, min(24, len(order) // 40))):
+        yardstick[part] = np.median(variance[part])
+    keep: NDArray[np.bool_] = variance <= LARGEST_SHARE_OF_EDGES * np.maximum(yardstick, np.median(variance) * 0.05)
+    return keep
+
+
+def _line(level: FloatArray, total: FloatArray, rounding: Rounding | None) -> tuple[float, float]:
+    """Read variance and shot of ``total = read + shot * level + rounding``, both >= 0, tiles weighing by relative error."""
+    known = np.zeros_like(total) if rounding is None else rounding.variance(level)
+    blurred_by_codes = total < SMALLEST_SHARE_OF_ROUNDING * known
+    if np.any(~blurred_by_codes):
+        level, total, known = (part[~blurred_by_codes] for part in (level, total, known))
+    variance = total - known
+    weight = np.ones_like(level)
+    for _ in range(4):
+        mean_level, mean_variance = np.average(level, weights=weight), max(float(np.average(variance, weights=weight)), 0.0)
+        scatter = np.sum(weight * (level - mean_level) ** 2)
+        slope = np.sum(weight * (level - mean_level) * (variance - mean_variance)) / scatter if scatter > 0 else 0.0
+        slope = float(np.clip(slope, 0.0, mean_variance / max(mean_level, 1e-9)))
+        read = max(mean_variance - slope * mean_level, 0.0)
+        expected = known + read + slope * np.maximum(level, 0)
+        weight = 1.0 / np.maximum(expected, expected.mean() * 1e-3 + 1e-18) ** 2
+    return read, slope
+
+
+def _correlation(tiles: _Tiles, keep: NDArray[np.bool_]) -> FloatArray:
+    variance = np.maximum(np.diagonal(tiles.covariance, axis1=1, axis2=2), 1e-18)
+    scaled = tiles.covariance / np.sqrt(variance[:, :, None] * variance[:, None, :])
+    mean = scaled[keep].mean(axis=0)
+    significant = np.abs(mean) > 0.05
+    return np.where(significant | np.eye(3, dtype=bool), np.clip(mean, -0.98, 0.98) * (1 - np.eye(3)) + np.eye(3), 0.0)

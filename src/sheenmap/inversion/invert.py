@@ -1,0 +1,123 @@
+"""From the signal to thickness, standard uncertainty and flags: the inverse's own story."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sheenmap.arrays import BoolArray, FloatArray
+from sheenmap.camera import Signal
+from sheenmap.flags import AMBIGUOUS, AT_LIMIT, BY_CONTINUITY, DARK, OFF_CURVE, OUTSIDE, WEAK, FlagArray, is_blocked
+from sheenmap.inversion.blocks import gather_blocks
+from sheenmap.inversion.candidates import find_candidates
+from sheenmap.inversion.likelihood import Doubts
+from sheenmap.inversion.local import Local, fit_locally, pixels_at
+from sheenmap.inversion.posterior import posterior_near
+from sheenmap.inversion.reference import fit_planes
+from sheenmap.inversion.regions import DECIDED_GAP
+from sheenmap.inversion.settle import Settled, settle
+from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE, split_strays
+from sheenmap.lookup import Table
+
+WEAK_SIGMA_NM = 5.0
+DARKEST_SHARE = 0.3  # of the darkest colour that the table holds; a mirror that shows no light is this dark
+FREEDOM = 2.0  # three channels less one thickness
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Inversion:
+    """What a photograph's pixels say (H, W).
+
+    ``thickness_nm`` and ``sigma_nm`` are NaN where no value was formed; whether it is claimed is for ``flags`` to say.
+    ``chi_square`` is that of the best fit; ``block`` the block that led a pixel; ``settled`` what the blocks hold.
+    """
+
+    thickness_nm: FloatArray
+    sigma_nm: FloatArray
+    chi_square: FloatArray
+    flags: FlagArray
+    block: NDArray[np.intp]
+    settled: Settled
+
+
+def invert(
+    signal: Signal, table: Table, inside: BoolArray, *, angle_deg: NDArray[np.floating] | None = None, doubts: Doubts
+) -> Inversion:
+    """Thickness of every pixel ``inside`` (H, W), as far as its light and its surroundings tell."""
+    flags = signal.flags.copy()
+    flags[~inside] = np.uint16(OUTSIDE.mask)
+    flags[inside & _is_black(signal, table)] |= np.uint16(DARK.mask)
+    usable = ~is_blocked(flags)
+    blocks = gather_blocks(signal, usable, angle_deg)
+    pixel_variance = blocks.variance * blocks.size**2 / signal.spread
+    settled = settle(blocks, pixel_variance, signal.correlation, table, doubts)
+    planes = fit_planes(settled.thickness_nm, settled.sigma_nm, settled.region, blocks.size)
+    local = fit_locally(signal, usable, angle_deg, table, planes, doubts)
+    thickness_nm, sigma_nm, chi_square = local.thickness_nm, local.sigma_nm, local.chi_square
+    stray = usable & ~(chi_square <= OFF_CURVE_CHI_SQUARE)
+    elsewhere = _fit_elsewhere(signal, np.flatnonzero(stray), angle_deg, table, doubts)
+    _flag_strays(flags, stray, elsewhere, thickness_nm, sigma_nm, chi_square)
+    _flag_order(flags, local, settled, stray)
+    _flag_values(flags, thickness_nm, sigma_nm, table)
+    return Inversion(
+        thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block, settled=settled
+    )
+
+
+def _is_black(signal: Signal, table: Table) -> BoolArray:
+    """Where every channel is far darker than any film of the search range: the mirror shows no light."""
+    darkest = table.signal.min(axis=(0, 1)) * DARKEST_SHARE
+    return np.asarray(np.all(signal.values < darkest - 4 * np.sqrt(signal.variance), axis=-1))
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class _Elsewhere:
+    """The best thickness of stray pixels (N,) over the whole table, its chi-square and that of the second over it."""
+
+    rows: NDArray[np.intp]
+    thickness_nm: FloatArray
+    sigma_nm: FloatArray
+    chi_square: FloatArray
+    gap: FloatArray
+
+
+def _fit_elsewhere(
+    signal: Signal, rows: NDArray[np.intp], angle_deg: NDArray[np.floating] | None, table: Table, doubts: Doubts
+) -> _Elsewhere:
+    pixels = pixels_at(signal, angle_deg, rows)
+    found = find_candidates(pixels.signal, pixels.variance, signal.correlation, table, doubts, pixels.angle_deg)
+    best = np.nan_to_num(found.thickness_nm[:, 0], nan=table.thickness_nm[0])
+    fit = posterior_near(pixels, table, best, np.full(rows.size, 8.0), doubts)
+    return _Elsewhere(
+        rows=rows, thickness_nm=fit.thickness_nm, sigma_nm=fit.sigma_nm, chi_square=found.chi_square[:, 0], gap=found.gap
+    )
+
+
+def _flag_strays(
+    flags: FlagArray, stray: BoolArray, elsewhere: _Elsewhere, thickness_nm: FloatArray, sigma_nm: FloatArray, chi_square: FloatArray
+) -> None:
+    on_curve = np.zeros(stray.shape, bool)
+    on_curve.flat[elsewhere.rows] = elsewhere.chi_square <= OFF_CURVE_CHI_SQUARE
+    severity = np.where(stray, np.where(np.isfinite(chi_square), chi_square, 1e9), 0.0)
+    defect, film = split_strays(stray, on_curve, severity)
+    flags[(defect | (stray & ~film)) & ((flags & np.uint16(OUTSIDE.mask)) == 0)] |= np.uint16(OFF_CURVE.mask)
+    moved = film.flat[elsewhere.rows]
+    rows = elsewhere.rows[moved]
+    thickness_nm.flat[rows], sigma_nm.flat[rows] = elsewhere.thickness_nm[moved], elsewhere.sigma_nm[moved]
+    chi_square.flat[rows] = elsewhere.chi_square[moved]
+    undecided = rows[elsewhere.gap[moved] < DECIDED_GAP]
+    flags.flat[undecided] |= np.uint16(AMBIGUOUS.mask)
+
+
+def _flag_order(flags: FlagArray, local: Local, settled: Settled, stray: BoolArray) -> None:
+    led = (local.block >= 0) & ~stray
+    block = local.block[led]
+    flags[led] |= np.where(settled.gap.ravel()[block] < DECIDED_GAP, np.uint16(AMBIGUOUS.mask), np.uint16(0))
+    flags[led] |= np.where(settled.alone.ravel()[block], np.uint16(0), np.uint16(BY_CONTINUITY.mask))
+
+
+def _flag_values(flags: FlagArray, thickness_nm: FloatArray, sigma_nm: FloatArray, table: Table) -> None:
+    low, high = table.search_nm
+    beyond = (thickness_nm > high) | ((thickness_nm < low) if low > 0 else np.zeros(flags.shape, bool))
+    flags[beyond] |= np.uint16(AT_LIMIT.mask)
+    flags[sigma_nm > WEAK_SIGMA_NM] |= np.uint16(WEAK.mask)
