@@ -29,7 +29,11 @@ class SiteReading:
 
 @dataclass(frozen=True, kw_only=True)
 class Statistics:
-    """Of the claimed pixels inside the region, in nm; None when nothing is claimed. ``percentiles`` maps 1, 5, 25, 50, 75, 95, 99."""
+    """Of the claimed pixels inside the region, in nm; None when nothing is claimed.
+
+    ``percentiles`` maps "1", "5", "25", "50", "75", "95", "99". ``off_curve``, ``ambiguous`` and ``unseen`` (saturated or dark)
+    count pixels inside the region that carry those flags.
+    """
 
     pixels: int
     claimed: int
@@ -39,6 +43,9 @@ class Statistics:
     sd_noise_corrected_nm: float | None
     u_mean_nm: float | None
     percentiles: dict[str, float]
+    off_curve: int = 0
+    ambiguous: int = 0
+    unseen: int = 0
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -1,6 +1,31 @@
-"""Where the part is, its scale, and its sites."""
+"""Where the part is, its scale, and its sites.
 
+Conventions of this room: pixels have x to the right and y down with the centre of the first at 0, 0; directions are degrees
+counter-clockwise from the picture's +x as a viewer sees it; a part's millimetres have y up and the notch down.
+"""
+
+from sheenmap.wafer.coordinates import distance_mm, part_mm, picture_px
+from sheenmap.wafer.disc import find_disc, find_discs
+from sheenmap.wafer.faults import NoDiscError, RegionError, SiteError
+from sheenmap.wafer.locate import locate
 from sheenmap.wafer.region import Disc, Region, Sites
+from sheenmap.wafer.sites import site_positions
 from sheenmap.wafer.spec import RegionSpec, SiteSpec
 
-__all__ = ["Disc", "Region", "RegionSpec", "SiteSpec", "Sites"]
+__all__ = [
+    "Disc",
+    "NoDiscError",
+    "Region",
+    "RegionError",
+    "RegionSpec",
+    "SiteError",
+    "SiteSpec",
+    "Sites",
+    "distance_mm",
+    "find_disc",
+    "find_discs",
+    "locate",
+    "part_mm",
+    "picture_px",
+    "site_positions",
+]

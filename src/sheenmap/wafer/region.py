@@ -13,7 +13,9 @@ class Disc:
     """A round part in the picture: centre and radius in pixels (centre of the first pixel is 0, 0).
 
     ``notch_deg`` is where the notch or flat points, counter-clockwise from the picture's +x as a viewer sees it (y up), or
-    None when none was found. ``u_px`` is the standard uncertainty of the fitted centre and radius.
+    None when none was found. ``flat_px`` is how deep a flat cuts in (0: a notch, or none). ``u_px`` is the standard uncertainty
+    of the fitted centre and radius. ``rim_share`` is the share of the full turn whose rim supports the fit, and ``in_frame``
+    the share that the picture shows at all: below 1 the frame cuts the part.
     """
 
     x_px: float
@@ -21,6 +23,9 @@ class Disc:
     radius_px: float
     u_px: float = 0.0
     notch_deg: float | None = None
+    flat_px: float = 0.0
+    rim_share: float = 1.0
+    in_frame: float = 1.0
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -38,7 +43,9 @@ class Region:
     disc : Disc or None
         The whole disc, edge exclusion not yet taken off.
     rotation_deg : float
-        Turns picture axes (x right, y up) into part axes with the notch down.
+        Turns picture axes (x right, y up) into part axes with the notch down, counter-clockwise.
+    edge_exclusion_mm : float
+        The rim that ``inside`` leaves out.
     """
 
     inside: BoolArray
@@ -46,6 +53,7 @@ class Region:
     mm_per_px: float | None = None
     disc: Disc | None = None
     rotation_deg: float = 0.0
+    edge_exclusion_mm: float = 0.0
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

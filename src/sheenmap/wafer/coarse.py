@@ -1,0 +1,197 @@
+"""Discs in a reduced copy of the picture: edges, votes for centres, and how much of each rim is there."""
+
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from sheenmap.arrays import FloatArray
+from sheenmap.wafer.circle import Circle, algebraic_circle, radial_residual, robust_circle
+
+REDUCED_PX = 360  # longest side of the reduced copy: a disc of a tenth of the picture still has 36 pixels of radius
+SMOOTHING_PX = 1.2
+LEAST_EDGE = 6.0  # in standard deviations of a noise gradient: 1 in 10^7 pixels of pure noise
+MOST_EDGES = 15_000
+LEAST_RADIUS_SHARE, MOST_RADIUS_SHARE = 0.04, 0.9  # of the longest side
+ALIGNED = 0.94  # cosine between gradient and radius on a rim: within 20 degrees
+SECTORS = 120
+
+
+@dataclass(frozen=True, kw_only=True)
+class Hint:
+    """A circle in the reduced copy: what share of its rim lies in the frame, and what share of that shows an edge."""
+
+    circle: Circle
+    visible: float
+    covered: float
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Edges:
+    """(E,) places of edges, their unit normals (either sense) and the reduced copy's shape."""
+
+    x: FloatArray
+    y: FloatArray
+    normal_x: FloatArray
+    normal_y: FloatArray
+    shape: tuple[int, int]
+
+
+def reduced(picture: NDArray[np.generic]) -> tuple[NDArray[np.float32], float]:
+    """The picture averaged down to at most ``REDUCED_PX`` a side, (h, w, C) float32, and the factor that it shrank by."""
+    height, width = picture.shape[:2]
+    factor = max(1.0, max(height, width) / REDUCED_PX)
+    rough = max(1, int(factor // 4))  # four samples or more to each reduced pixel and side keep the averaging honest
+    thinned = np.ascontiguousarray(picture[rough // 2 :: rough, rough // 2 :: rough]).astype(np.float32, copy=False)
+    thinned = np.nan_to_num(thinned, nan=0.0, posinf=0.0, neginf=0.0)
+    if factor > 1:
+        size = (max(1, round(width / factor)), max(1, round(height / factor)))
+        thinned = np.asarray(cv2.resize(thinned, size, interpolation=cv2.INTER_AREA), np.float32)
+    return np.atleast_3d(thinned), factor
+
+
+def find_edges(copy: NDArray[np.float32]) -> Edges:
+    """Ridge of the gradient, all channels together, each in units of its own noise.
+
+    References
+    ----------
+    Di Zenzo, Comput. Vision Graph. Image Process. 33, 116 (1986): gradient of a multi-channel image (from memory).
+    """
+    xx, yy, xy = (np.zeros(copy.shape[:2], np.float32) for _ in range(3))
+    for channel in np.moveaxis(copy, -1, 0):
+        smooth = cv2.GaussianBlur(channel, (0, 0), SMOOTHING_PX, borderType=cv2.BORDER_REPLICATE)
+        scale = _gradient_noise(channel)
+        along_x = cv2.Sobel(smooth, cv2.CV_32F, 1, 0, ksize=3, scale=1 / 8) / scale
+        along_y = cv2.Sobel(smooth, cv2.CV_32F, 0, 1, ksize=3, scale=1 / 8) / scale
+        xx, yy, xy = xx + along_x**2, yy + along_y**2, xy + along_x * along_y
+    root = np.sqrt(((xx - yy) / 2) ** 2 + xy**2)
+    strength = np.sqrt((xx + yy) / 2 + root)
+    direction = 0.5 * np.arctan2(2 * xy, xx - yy)
+    return _thinned(strength, np.cos(direction), np.sin(direction))
+
+
+def _gradient_noise(channel: NDArray[np.float32]) -> float:
+    """Standard deviation that noise gives the smoothed gradient; at least 0.3 % of the channel's spread, for clean pictures."""
+    second = channel[:, 2:] - 2 * channel[:, 1:-1] + channel[:, :-2]
+    noise = 1.4826 * float(np.median(np.abs(second))) / np.sqrt(6) if second.size else 0.0
+    spread = float(np.ptp(np.percentile(channel, [1, 99])))
+    # a Gaussian derivative of width s lets through noise / (s^2 sqrt(8 pi))
+    through = 1 / (SMOOTHING_PX**2 * np.sqrt(8 * np.pi))
+    return float(max(noise * through, 0.003 * spread, 1e-12))
+
+
+def _thinned(strength: NDArray[np.float32], cosine: NDArray[np.float32], sine: NDArray[np.float32]) -> Edges:
+    """Pixels that are stronger than both neighbours across the edge, moved to the ridge's sub-pixel crest."""
+    height, width = strength.shape
+    rows, columns = np.nonzero(strength[1:-1, 1:-1] > LEAST_EDGE)
+    rows, columns = rows + 1, columns + 1
+    normal_x, normal_y = cosine[rows, columns], sine[rows, columns]
+    step_x, step_y = np.rint(normal_x).astype(int), np.rint(normal_y).astype(int)
+    here = strength[rows, columns].astype(float)
+    ahead, behind = strength[rows + step_y, columns + step_x], strength[rows - step_y, columns - step_x]
+    crest = (here >= ahead) & (here > behind)
+    curvature = np.maximum(2 * here - ahead - behind, 1e-9)
+    shift = np.clip(0.5 * (ahead - behind) / curvature, -0.5, 0.5)
+    x, y = columns + shift * step_x, rows + shift * step_y
+    strongest = np.argsort(here[crest])[::-1][:MOST_EDGES]
+    kept = np.flatnonzero(crest)[strongest]
+    return Edges(
+        x=x[kept].astype(float), y=y[kept].astype(float),
+        normal_x=normal_x[kept].astype(float), normal_y=normal_y[kept].astype(float), shape=(height, width),
+    )  # fmt: skip
+
+
+def find_hints(edges: Edges) -> list[Hint]:
+    """Circles that the edges support, the best covered first; duplicates of one circle are joined."""
+    hints: list[Hint] = []
+    for x, y in _voted_centres(edges):
+        for radius in _voted_radii(edges, x, y):
+            hint = _refined(edges, Circle(x_px=x, y_px=y, radius_px=radius))
+            if hint is not None and not any(_same(hint.circle, other.circle) for other in hints):
+                hints.append(hint)
+    return sorted(hints, key=lambda hint: hint.covered * hint.visible, reverse=True)
+
+
+def _same(a: Circle, b: Circle) -> bool:
+    near = 0.04 * max(a.radius_px, b.radius_px) + 2
+    return float(np.hypot(a.x_px - b.x_px, a.y_px - b.y_px)) < near and abs(a.radius_px - b.radius_px) < near
+
+
+def _voted_centres(edges: Edges, *, most: int = 14) -> list[tuple[float, float]]:
+    """Places that many edge normals run through; cells of two pixels, up to half a picture beyond the frame."""
+    height, width = edges.shape
+    longest = max(height, width)
+    radii = np.arange(LEAST_RADIUS_SHARE * longest, MOST_RADIUS_SHARE * longest, 2.0)
+    rows, columns = height + 2, width + 2  # cells of two pixels over twice the frame
+    votes = np.zeros(rows * columns)
+    for sense in (-1.0, 1.0):
+        x = (edges.x[:, None] + sense * radii * edges.normal_x[:, None] + width / 2) / 2
+        y = (edges.y[:, None] + sense * radii * edges.normal_y[:, None] + height / 2) / 2
+        inside = (x >= 0) & (x < columns) & (y >= 0) & (y < rows)
+        cells = y[inside].astype(np.int64) * columns + x[inside].astype(np.int64)
+        votes += np.bincount(cells, minlength=votes.size)
+    smooth = cv2.GaussianBlur(votes.reshape(rows, columns), (0, 0), 1.5)
+    crest = (smooth == cv2.dilate(smooth, np.ones((9, 9), np.uint8))) & (smooth > 0.15 * smooth.max())
+    row, column = np.nonzero(crest)
+    order = np.argsort(smooth[row, column])[::-1][:most]
+    return [(2.0 * column[i] + 1 - width / 2, 2.0 * row[i] + 1 - height / 2) for i in order]
+
+
+def _voted_radii(edges: Edges, x: float, y: float, *, most: int = 5) -> list[float]:
+    """Radii about a centre at which the most sectors hold an edge that faces the centre."""
+    distance, sector, aligned = _seen_from(edges, x, y)
+    longest = max(edges.shape)
+    bins = np.arange(LEAST_RADIUS_SHARE * longest, MOST_RADIUS_SHARE * longest, 1.0)
+    reach = np.minimum(1.5 + 0.015 * bins, 5.0)
+    order = np.argsort(distance[aligned])
+    sorted_distance, sorted_sector = distance[aligned][order], sector[aligned][order]
+    first = np.searchsorted(sorted_distance, bins - reach)
+    last = np.searchsorted(sorted_distance, bins + reach)
+    counts = np.array([np.unique(sorted_sector[a:b]).size for a, b in zip(first, last)], float)
+    chosen: list[float] = []
+    while counts.size and len(chosen) < most and counts.max() >= 0.15 * SECTORS:
+        best = float(bins[int(np.argmax(counts))])
+        chosen.append(best)
+        counts[np.abs(bins - best) < 4 + 0.03 * best] = 0
+    return chosen
+
+
+def _seen_from(edges: Edges, x: float, y: float) -> tuple[FloatArray, NDArray[np.int64], NDArray[np.bool_]]:
+    dx, dy = edges.x - x, edges.y - y
+    distance = np.maximum(np.hypot(dx, dy), 1e-9)
+    aligned = np.abs(dx * edges.normal_x + dy * edges.normal_y) > ALIGNED * distance
+    sector = np.floor((np.arctan2(dy, dx) / (2 * np.pi) + 0.5) * SECTORS).astype(np.int64) % SECTORS
+    return distance, sector, aligned
+
+
+def _refined(edges: Edges, circle: Circle) -> Hint | None:
+    """The circle fitted to the edges near it, with the share of its rim that they cover; None when it dissolves."""
+    for reach in (4 + 0.03 * circle.radius_px, 3 + 0.015 * circle.radius_px, 2 + 0.01 * circle.radius_px):
+        _, _, aligned = _seen_from(edges, circle.x_px, circle.y_px)
+        near = aligned & (np.abs(radial_residual(circle, edges.x, edges.y)) < reach)
+        start = algebraic_circle(edges.x[near], edges.y[near]) if near.sum() >= 12 else None
+        if start is None:
+            return None
+        if abs(start.radius_px - circle.radius_px) > reach:
+            start = circle
+        circle, _ = robust_circle(edges.x[near], edges.y[near], start, rounds=12)
+    if not LEAST_RADIUS_SHARE * max(edges.shape) <= circle.radius_px <= 2 * max(edges.shape):
+        return None
+    return _judged(edges, circle)
+
+
+def _judged(edges: Edges, circle: Circle) -> Hint | None:
+    _, sector, aligned = _seen_from(edges, circle.x_px, circle.y_px)
+    residual = radial_residual(circle, edges.x, edges.y)
+    reach = 1.5 + 0.005 * circle.radius_px
+    seen = np.zeros(SECTORS, bool)
+    seen[sector[aligned & (np.abs(residual) < reach)]] = True
+    angle = (np.arange(SECTORS) + 0.5) / SECTORS * 2 * np.pi - np.pi
+    x = circle.x_px + circle.radius_px * np.cos(angle)
+    y = circle.y_px + circle.radius_px * np.sin(angle)
+    height, width = edges.shape
+    visible = (x > 1) & (x < width - 2) & (y > 1) & (y < height - 2)
+    if not visible.any():
+        return None
+    return Hint(circle=circle, visible=float(visible.mean()), covered=float((seen & visible).sum() / visible.sum()))
