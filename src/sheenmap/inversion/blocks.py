@@ -22,7 +22,8 @@ class Blocks:
     """Means over squares of ``size`` pixels, on a grid (h, w).
 
     ``signal`` and ``variance`` (h, w, 3) are of the mean; ``even`` (h, w) is True where a block holds enough usable pixels
-    that differ by noise and a tilt alone; ``angle_deg`` (h, w) or None.
+    that differ by noise and a tilt alone; ``angle_deg`` (h, w) or None. A mean is worth ``pixels_worth`` independent pixels:
+    one only where neighbours share their noise, since it is not known over how far.
     """
 
     size: int
@@ -30,6 +31,7 @@ class Blocks:
     variance: FloatArray
     even: BoolArray
     angle_deg: FloatArray | None
+    pixels_worth: float
 
 
 def block_size(shape: tuple[int, ...]) -> int:
@@ -47,13 +49,15 @@ def gather_blocks(signal: Signal, usable: BoolArray, angle_deg: NDArray[np.float
     mean = weighted.sum(axis=(2, 3)) / np.maximum(count, 1)
     noise = np.where(share > 0, variance, 0).sum(axis=(2, 3)) / np.maximum(count, 1)
     full = count[..., 0] >= 0.999 * size * size
+    worth = float(size * size) if signal.spread <= 1 else 1.0
     roughness = _unevenness(values - mean[:, :, None, None, :], noise)
     return Blocks(
         size=size,
         signal=mean.astype(float),
-        variance=noise.astype(float) * signal.spread / np.maximum(count, 1),
+        variance=noise.astype(float) / worth,
         even=full & (roughness <= EVEN),
         angle_deg=None if angle_deg is None else _tiled(angle_deg[..., None], size).mean(axis=(2, 3))[..., 0],
+        pixels_worth=worth,
     )
 
 

@@ -24,9 +24,14 @@ class Candidates:
 
     @property
     def gap(self) -> FloatArray:
-        """(N,) chi-square of the second over the best; inf when alone."""
-        with np.errstate(invalid="ignore"):
-            return np.where(np.isfinite(self.chi_square[:, 0]), self.chi_square[:, 1] - self.chi_square[:, 0], 0.0)
+        """(N,) chi-square of the second over the best; inf when alone, 0 when there is none."""
+        return np.where(np.isfinite(self.chi_square[:, 0]), gap_of_second(self.chi_square), 0.0)
+
+
+def gap_of_second(chi_square: FloatArray) -> FloatArray:
+    """Chi-square (...,) of the second over the best of (..., K); inf where there is no second."""
+    second = chi_square[..., 1]
+    return np.where(np.isfinite(second), second - np.where(np.isfinite(second), chi_square[..., 0], 0.0), np.inf)
 
 
 def find_candidates(

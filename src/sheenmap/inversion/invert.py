@@ -11,17 +11,18 @@ from sheenmap.flags import AMBIGUOUS, AT_LIMIT, BY_CONTINUITY, DARK, OFF_CURVE, 
 from sheenmap.inversion.blocks import gather_blocks
 from sheenmap.inversion.candidates import find_candidates
 from sheenmap.inversion.likelihood import Doubts
-from sheenmap.inversion.local import Local, fit_locally, pixels_at
+from sheenmap.inversion.local import Local, around, fit_locally, pixels_at
 from sheenmap.inversion.posterior import posterior_near
-from sheenmap.inversion.reference import fit_planes
+from sheenmap.inversion.reference import Planes, fit_planes
 from sheenmap.inversion.regions import DECIDED_GAP
+from sheenmap.inversion.residuals import with_residual_noise
 from sheenmap.inversion.settle import Settled, settle
 from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE, split_strays
 from sheenmap.lookup import Table
 
 WEAK_SIGMA_NM = 5.0
 DARKEST_SHARE = 0.3  # of the darkest colour that the table holds; a mirror that shows no light is this dark
-FREEDOM = 2.0  # three channels less one thickness
+FEWEST_RESIDUALS, MOST_RESIDUALS = 500, 30_000
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -48,10 +49,10 @@ def invert(
     flags[~inside] = np.uint16(OUTSIDE.mask)
     flags[inside & _is_black(signal, table)] |= np.uint16(DARK.mask)
     usable = ~is_blocked(flags)
-    blocks = gather_blocks(signal, usable, angle_deg)
-    pixel_variance = blocks.variance * blocks.size**2 / signal.spread
-    settled = settle(blocks, pixel_variance, signal.correlation, table, doubts)
-    planes = fit_planes(settled.thickness_nm, settled.sigma_nm, settled.region, blocks.size)
+    settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
+    if signal.spread > 1:
+        signal = _with_shared_noise(signal, usable, angle_deg, table, planes, doubts)
+        settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     local = fit_locally(signal, usable, angle_deg, table, planes, doubts)
     thickness_nm, sigma_nm, chi_square = local.thickness_nm, local.sigma_nm, local.chi_square
     stray = usable & ~(chi_square <= OFF_CURVE_CHI_SQUARE)
@@ -62,6 +63,29 @@ def invert(
     return Inversion(
         thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block, settled=settled
     )
+
+
+def _settled_planes(
+    signal: Signal, usable: BoolArray, angle_deg: NDArray[np.floating] | None, table: Table, doubts: Doubts
+) -> tuple[Settled, Planes]:
+    blocks = gather_blocks(signal, usable, angle_deg)
+    pixel_variance = blocks.variance * blocks.pixels_worth
+    settled = settle(blocks, pixel_variance, signal.correlation, table, doubts)
+    return settled, fit_planes(settled.thickness_nm, settled.sigma_nm, settled.region, blocks.size)
+
+
+def _with_shared_noise(
+    signal: Signal, usable: BoolArray, angle_deg: NDArray[np.floating] | None, table: Table, planes: Planes, doubts: Doubts
+) -> Signal:
+    """The signal with its noise as the residuals of evenly spread pixels of one region show it."""
+    known = np.repeat(np.repeat(planes.region >= 0, planes.size, 0), planes.size, 1)[: usable.shape[0], : usable.shape[1]]
+    rows = np.flatnonzero(usable & known)
+    if rows.size < FEWEST_RESIDUALS:
+        return signal
+    rows = rows[:: max(1, rows.size // MOST_RESIDUALS)]
+    pixels = pixels_at(signal, angle_deg, rows)
+    reference_nm, window_nm = around(rows, usable.shape, planes)
+    return with_residual_noise(signal, pixels, posterior_near(pixels, table, reference_nm, window_nm, doubts).thickness_nm, table)
 
 
 def _is_black(signal: Signal, table: Table) -> BoolArray:

@@ -55,14 +55,23 @@ def fit_locally(
     for down, right in NEIGHBOURS:
         attempts.append(_from_neighbour(rows[at_edge], own[at_edge], planes, down, right))
     for members, blocks in attempts:
-        reference_nm = planes.at(members // shape[1], members % shape[1], *np.divmod(blocks, planes.region.shape[1]))
-        window_nm = WINDOW_NM + WINDOW_IN_SCATTER * planes.scatter_nm.ravel()[blocks]
+        reference_nm, window_nm = around(members, shape, planes, blocks)
         fit = posterior_near(pixels_at(signal, angle_deg, members), table, reference_nm, window_nm, doubts)
         better = fit.chi_square < chi_square.flat[members] - (BETTER_CHI_SQUARE if members is not rows else 0)
         taken = members[better]
         thickness_nm.flat[taken], sigma_nm.flat[taken] = fit.thickness_nm[better], fit.sigma_nm[better]
         chi_square.flat[taken], block.flat[taken] = fit.chi_square[better], blocks[better]
     return Local(thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, block=block)
+
+
+def around(
+    rows: NDArray[np.intp], shape: tuple[int, ...], planes: Planes, blocks: NDArray[np.intp] | None = None
+) -> tuple[FloatArray, FloatArray]:
+    """Thickness to look around, and how far, for pixels with flat numbers ``rows``, by the planes of ``blocks`` or their own."""
+    blocks = _block_of(rows, shape, planes) if blocks is None else blocks
+    row, column = np.divmod(rows, shape[1])
+    reference_nm = planes.at(row, column, *np.divmod(blocks, planes.region.shape[1]))
+    return reference_nm, WINDOW_NM + WINDOW_IN_SCATTER * planes.scatter_nm.ravel()[blocks]
 
 
 def _block_of(rows: NDArray[np.intp], shape: tuple[int, ...], planes: Planes) -> NDArray[np.intp]:

@@ -15,6 +15,7 @@ from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
 from sheenmap.arrays import BoolArray, FloatArray
+from sheenmap.inversion.candidates import gap_of_second
 from sheenmap.inversion.likelihood import Doubts
 from sheenmap.inversion.order import STEP_COST
 from sheenmap.lookup import Table, evaluate
@@ -94,7 +95,7 @@ def settle_regions(
 
 def _seeds(flat_region: NDArray[np.intp], costs: FloatArray) -> NDArray[np.intp]:
     """The block of each region whose candidates lie furthest apart in chi-square: most other orders end there."""
-    gap = np.where(np.isfinite(costs[:, 1]), costs[:, 1] - costs[:, 0], np.inf)
+    gap = gap_of_second(costs)
     order = np.lexsort((-np.nan_to_num(gap, posinf=1e9), flat_region))
     known = order[flat_region[order] >= 0]
     _, first = np.unique(flat_region[known], return_index=True)

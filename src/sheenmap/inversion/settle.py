@@ -77,7 +77,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
         alone=_alone(rivals_nm, rival_cost, thickness_nm, width_nm) & known,
         others_nm=orders.others_nm.reshape(*shape, -1),
         rivals_nm=rivals_nm,
-        rival_gap=rival_cost - rival_cost[..., :1],
+        rival_gap=_over_best(rival_cost),
         link_nm=width_nm,
     )
 
@@ -117,10 +117,14 @@ def _sigma(evidence: Evidence, thickness_nm: FloatArray, table: Table) -> FloatA
 
 def _alone(rivals_nm: FloatArray, rival_cost: FloatArray, thickness_nm: FloatArray, width_nm: float) -> BoolArray:
     """Whether a pixel's own candidates leave only the chosen thickness within the odds that decide."""
-    gap = rival_cost - rival_cost[..., :1]
-    close = np.nan_to_num(gap, nan=np.inf, posinf=np.inf) < DECIDED_GAP
+    close = _over_best(rival_cost) < DECIDED_GAP
     elsewhere = np.abs(rivals_nm - thickness_nm[..., None]) > 2 * width_nm
     return np.asarray(~np.any(close & elsewhere, axis=-1))
+
+
+def _over_best(cost: FloatArray) -> FloatArray:
+    best = cost[..., :1]
+    return np.where(np.isfinite(cost), cost - np.where(np.isfinite(best), best, 0.0), np.inf)
 
 
 def _nothing(shape: tuple[int, int]) -> Settled:
