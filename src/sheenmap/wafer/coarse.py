@@ -9,8 +9,11 @@ from numpy.typing import NDArray
 from sheenmap.arrays import FloatArray
 from sheenmap.wafer.circle import Circle, algebraic_circle, radial_residual, robust_circle
 
+Copy = NDArray[np.float32]
 REDUCED_PX = 360  # longest side of the reduced copy: a disc of a tenth of the picture still has 36 pixels of radius
 SMOOTHING_PX = 1.2
+SHARPNESS = 1.2  # an edge's gradient falls as 1 / width of the smoothing (2.5 here), that of a ring of colour stays (1)
+SMOOTHER_PX = 3.0
 LEAST_EDGE = 6.0  # in standard deviations of a noise gradient: 1 in 10^7 pixels of pure noise
 MOST_EDGES = 15_000
 LEAST_RADIUS_SHARE, MOST_RADIUS_SHARE = 0.04, 0.9  # of the longest side
@@ -38,7 +41,7 @@ class Edges:
     shape: tuple[int, int]
 
 
-def reduced(picture: NDArray[np.generic]) -> tuple[NDArray[np.float32], float]:
+def reduced(picture: NDArray[np.generic]) -> tuple[Copy, float]:
     """The picture averaged down to at most ``REDUCED_PX`` a side, (h, w, C) float32, and the factor that it shrank by."""
     height, width = picture.shape[:2]
     factor = max(1.0, max(height, width) / REDUCED_PX)
@@ -51,27 +54,33 @@ def reduced(picture: NDArray[np.generic]) -> tuple[NDArray[np.float32], float]:
     return np.atleast_3d(thinned), factor
 
 
-def find_edges(copy: NDArray[np.float32]) -> Edges:
+def find_edges(copy: Copy) -> Edges:
     """Ridge of the gradient, all channels together, each in units of its own noise.
 
     References
     ----------
     Di Zenzo, Comput. Vision Graph. Image Process. 33, 116 (1986): gradient of a multi-channel image (from memory).
     """
-    xx, yy, xy = (np.zeros(copy.shape[:2], np.float32) for _ in range(3))
-    for channel in np.moveaxis(copy, -1, 0):
-        smooth = cv2.GaussianBlur(channel, (0, 0), SMOOTHING_PX, borderType=cv2.BORDER_REPLICATE)
-        scale = _gradient_noise(channel)
-        along_x = cv2.Sobel(smooth, cv2.CV_32F, 1, 0, ksize=3, scale=1 / 8) / scale
-        along_y = cv2.Sobel(smooth, cv2.CV_32F, 0, 1, ksize=3, scale=1 / 8) / scale
-        xx, yy, xy = xx + along_x**2, yy + along_y**2, xy + along_x * along_y
-    root = np.sqrt(((xx - yy) / 2) ** 2 + xy**2)
-    strength = np.sqrt((xx + yy) / 2 + root)
-    direction = 0.5 * np.arctan2(2 * xy, xx - yy)
+    scales = [_gradient_noise(channel) for channel in np.moveaxis(copy, -1, 0)]
+    strength, direction = _gradient(copy, scales, SMOOTHING_PX)
+    smoother, _ = _gradient(copy, scales, SMOOTHER_PX)
+    strength[strength < SHARPNESS * smoother] = 0
     return _thinned(strength, np.cos(direction), np.sin(direction))
 
 
-def _gradient_noise(channel: NDArray[np.float32]) -> float:
+def _gradient(copy: Copy, scales: list[float], width_px: float) -> tuple[Copy, Copy]:
+    """Strength in units of ``scales`` and direction in radians of the gradient of all channels together, (h, w) each."""
+    xx, yy, xy = (np.zeros(copy.shape[:2], np.float32) for _ in range(3))
+    for channel, scale in zip(np.moveaxis(copy, -1, 0), scales):
+        smooth = cv2.GaussianBlur(channel, (0, 0), width_px, borderType=cv2.BORDER_REPLICATE)
+        along_x = cv2.Sobel(smooth, cv2.CV_32F, 1, 0, ksize=3, scale=1 / (8 * scale))
+        along_y = cv2.Sobel(smooth, cv2.CV_32F, 0, 1, ksize=3, scale=1 / (8 * scale))
+        xx, yy, xy = xx + along_x**2, yy + along_y**2, xy + along_x * along_y
+    root = np.sqrt(((xx - yy) / 2) ** 2 + xy**2)
+    return np.sqrt((xx + yy) / 2 + root), 0.5 * np.arctan2(2 * xy, xx - yy)
+
+
+def _gradient_noise(channel: Copy) -> float:
     """Standard deviation that noise gives the smoothed gradient; at least 0.3 % of the channel's spread, for clean pictures."""
     second = channel[:, 2:] - 2 * channel[:, 1:-1] + channel[:, :-2]
     noise = 1.4826 * float(np.median(np.abs(second))) / np.sqrt(6) if second.size else 0.0
@@ -81,7 +90,7 @@ def _gradient_noise(channel: NDArray[np.float32]) -> float:
     return float(max(noise * through, 0.003 * spread, 1e-12))
 
 
-def _thinned(strength: NDArray[np.float32], cosine: NDArray[np.float32], sine: NDArray[np.float32]) -> Edges:
+def _thinned(strength: Copy, cosine: Copy, sine: Copy) -> Edges:
     """Pixels that are stronger than both neighbours across the edge, moved to the ridge's sub-pixel crest."""
     height, width = strength.shape
     rows, columns = np.nonzero(strength[1:-1, 1:-1] > LEAST_EDGE)

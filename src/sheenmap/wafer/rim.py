@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import uniform_filter1d
 
 from sheenmap.arrays import BoolArray, FloatArray
 from sheenmap.wafer.circle import Circle, radial_residual, robust_circle
@@ -90,8 +91,8 @@ def refine(picture: NDArray[np.generic], start: Circle, reach_px: float) -> Rim 
     Notes
     -----
     The strongest step within reach is searched first, with a narrower reach each time. Then each ray's rim is where its area
-    is kept: minus w plus the integral over (-w, w) of the profile scaled to 1 inside and 0 outside. This is linear in the
-    pixels, so noise makes no bias, and blur that is the same on both sides makes none either.
+    is kept: a sharp step there, between the lines through both flanks, has the integral that the pixels have. This is linear
+    in the pixels, so noise makes no bias, and blur that is the same on both sides makes none either.
 
     References
     ----------
@@ -106,7 +107,7 @@ def refine(picture: NDArray[np.generic], start: Circle, reach_px: float) -> Rim 
     blur_px = _blur(picture, circle)
     rim: Rim | None = None
     for _ in range(2):
-        rim = _kept_area(picture, circle, np.clip(5.0 * blur_px, 4.0, 0.2 * circle.radius_px), blur_px)
+        rim = _kept_area(picture, circle, float(np.clip(6.0 * blur_px, 5.0, 0.2 * circle.radius_px)), blur_px)
         if rim is None:
             return None
         circle = rim.circle
@@ -140,26 +141,56 @@ def _stepped(picture: NDArray[np.generic], circle: Circle, reach: float) -> Circ
     return fit if support.any() and near.mean() > 0.4 else None
 
 
-def _levels(values: NDArray[np.float32]) -> tuple[NDArray[np.float32], NDArray[np.float32]]:
-    """Mean of the inner and of the outer quarter of each ray: (A, C) each."""
-    quarter = max(2, values.shape[1] // 4)
-    return values[:, :quarter].mean(axis=1), values[:, -quarter:].mean(axis=1)
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Profiles:
+    """Rays scaled to their own step: 1 inside, 0 outside (A, O), how that 1 grows a pixel (A,), step over noise (A,)."""
+
+    share: FloatArray
+    slope: FloatArray
+    strength: FloatArray
 
 
-def _scaled(values: NDArray[np.float32]) -> tuple[FloatArray, FloatArray]:
-    """Profiles from 1 inside to 0 outside (A, O), and each ray's step in standard deviations of its noise (A,).
+def _scaled(values: NDArray[np.float32], offsets: FloatArray, flank: float) -> Profiles:
+    """Profiles on straight lines through what lies ``flank`` or more inside and outside of the rim.
 
-    Channels are weighted by their step over their noise squared, the best weights for one linear reading.
+    The film's colour may change towards its rim; a level where a line is due would move the rim by half a pixel and more.
+    Slopes are shared by neighbouring rays. Channels are weighted by step over noise squared, the best for one linear reading.
     """
-    inner, outer = _levels(values)
-    quarter = max(2, values.shape[1] // 4)
-    noise = np.concatenate([values[:, :quarter] - inner[:, None], values[:, -quarter:] - outer[:, None]], axis=1)
-    step = inner - outer
+    inner, outer = offsets <= max(-flank, offsets[2]), offsets >= min(flank, offsets[-3])
+    inner_level, inner_slope, inner_noise = _line(values[:, inner], offsets[inner])
+    outer_level, outer_slope, outer_noise = _line(values[:, outer], offsets[outer])
+    step = inner_level - outer_level
     floor = 1e-6 + 1e-3 * np.median(np.abs(step), axis=0)
-    variance = np.maximum(np.median(noise**2, axis=(0, 1)) * 2.2, floor**2)
-    square = np.maximum(np.sum(step**2 / variance, axis=-1), 1e-12)
-    profile = np.sum((values - outer[:, None]) * (step / variance)[:, None], axis=-1) / square[:, None]
-    return profile.astype(np.float64), np.sqrt(square).astype(np.float64)
+    variance = np.maximum((inner_noise + outer_noise) / 2, floor**2)
+    weight = step / variance
+    square = np.maximum(np.sum(step * weight, axis=-1), 1e-12)
+    above = values - outer_level[:, None] - outer_slope[:, None] * offsets[:, None]
+    share = np.einsum("aoc,ac->ao", above, weight) / square[:, None]
+    slope = np.sum((inner_slope - outer_slope) * weight, axis=-1) / square
+    return Profiles(share=share, slope=slope, strength=np.sqrt(square))
+
+
+def _line(values: NDArray[np.float32], offsets: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Level at offset 0 and slope of each ray (A, C), and the noise variance of each channel (C,)."""
+    mean_offset = float(offsets.mean())
+    centred = offsets - mean_offset
+    mean = values.mean(axis=1, dtype=np.float64)
+    slope = np.einsum("aoc,o->ac", values, centred) / float(np.sum(centred**2))
+    slope = uniform_filter1d(slope, max(5, slope.shape[0] // 90), axis=0, mode="wrap")
+    residual = values - mean[:, None] - slope[:, None] * centred[:, None]
+    noise = 2.2 * np.median(residual**2, axis=(0, 1))  # 2.2: from the median of squares to the variance of a normal
+    return mean - slope * mean_offset, slope, noise
+
+
+def _crossing(profiles: Profiles, offsets: FloatArray) -> FloatArray:
+    """Where each ray's rim is so that the area under its profile is kept: I = (e + w) + b (e^2 - w^2) / 2, b the slope. (A,)."""
+    window = float(offsets[-1])
+    area = np.trapezoid(profiles.share, offsets, axis=1)
+    slope = np.clip(profiles.slope, -0.8 / window, 0.8 / window)
+    edge = np.zeros_like(area)
+    for _ in range(6):
+        edge = np.clip(area - window + slope * (window**2 - edge**2) / 2, -window, window)
+    return edge
 
 
 def _blur(picture: NDArray[np.generic], circle: Circle) -> float:
@@ -167,23 +198,24 @@ def _blur(picture: NDArray[np.generic], circle: Circle) -> float:
     reach = float(np.clip(0.1 * circle.radius_px, 6.0, 25.0))
     offsets = np.arange(-reach, reach + 0.25, 0.5)
     values, inside = along_rays(picture, circle, ray_angles(circle.radius_px, most=720), offsets)
-    profile, step = _scaled(values)
-    usable = inside.all(axis=1) & (step > LEAST_STEP)
+    profiles = _scaled(values, offsets, 0.6 * reach)
+    usable = inside.all(axis=1) & (profiles.strength > LEAST_STEP)
     if usable.sum() < 12:
         return 1.0
-    median = np.minimum.accumulate(np.median(profile[usable], axis=0))
+    shape = profiles.share / np.clip(1 + profiles.slope[:, None] * offsets, 0.2, 5.0)
+    median = np.minimum.accumulate(np.median(shape[usable], axis=0))
     high, low = (float(np.interp(-level, -median, offsets)) for level in (0.84, 0.16))
     return float(np.clip((low - high) / 2, 0.3, reach / 3))
 
 
 def _kept_area(picture: NDArray[np.generic], circle: Circle, window: float, blur_px: float) -> Rim | None:
     angle_rad = ray_angles(circle.radius_px)
-    offsets = np.arange(-window, window + 0.25, 0.5)
+    offsets = np.linspace(-window, window, 2 * int(np.ceil(2 * window)) + 1)
     values, inside = along_rays(picture, circle, angle_rad, offsets)
-    profile, step = _scaled(values)
-    edge = offsets[0] + np.trapezoid(profile, offsets, axis=1)
+    profiles = _scaled(values, offsets, max(2.5 * blur_px, 0.4 * window))
+    edge = _crossing(profiles, offsets)
     visible = inside.all(axis=1)
-    usable = visible & (step > LEAST_STEP) & (np.abs(edge) < 0.5 * window)
+    usable = visible & (profiles.strength > LEAST_STEP) & (np.abs(edge) < 0.5 * window)
     if usable.sum() < 24:
         return None
     distance = circle.radius_px + edge[usable]
