@@ -20,7 +20,8 @@ TILE = 8
 WIDE_SPACING = 3
 CORRELATED_RATIO = 1.15  # wide over narrow variance; white noise on 100 tiles stays under it with odds above 0.999
 SMALLEST_SHARE_OF_ROUNDING = 3.0  # below, noise is finer than a code and rounding is no longer an independent twelfth
-LARGEST_SHARE_OF_EDGES = 2.0  # tiles above this multiple of their level's median hold an edge, dust or a scratch
+LARGEST_SHARE_OF_EDGES = (3.0, 2.2, 1.8, 1.6, 1.6, 1.6)  # tiles above this multiple of the line hold an edge, dust, a scratch
+FEWEST_TILES = 12
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -98,9 +99,7 @@ def estimate_noise(
         return Noise(read_variance=np.zeros(3), shot=np.zeros(3), correlation=np.eye(3), rounding=rounding)
     ratio = _ratio(narrow, wide)
     chosen = wide if ratio > CORRELATED_RATIO else narrow
-    keep = _without_edges(chosen)
-    lines = [_line(chosen.level[keep, c], chosen.covariance[keep, c, c], rounding) for c in range(3)]
-    read_variance, shot = np.transpose(lines)
+    read_variance, shot, keep = _lines(chosen, rounding)
     spread = ratio if ratio > CORRELATED_RATIO else 1.0
     correlation = _correlation(chosen, keep)
     return Noise(read_variance=read_variance, shot=shot, correlation=correlation, rounding=rounding, spread=spread)
@@ -164,24 +163,39 @@ def _tile_sums(values: FloatArray) -> FloatArray:
 
 
 def _ratio(narrow: _Tiles, wide: _Tiles) -> float:
-    medians = [np.median(np.trace(tiles.covariance, axis1=1, axis2=2)) for tiles in (wide, narrow)]
+    medians = [np.quantile(np.trace(tiles.covariance, axis1=1, axis2=2), 0.25) for tiles in (wide, narrow)]
     return float(medians[0] / medians[1]) if medians[1] > 0 else 1.0
 
 
-def _without_edges(tiles: _Tiles) -> NDArray[np.bool_]:
-    """Tiles whose variance is no more than noise of their level gives: neighbours in level serve as the yardstick."""
-    variance = np.trace(tiles.covariance, axis1=1, axis2=2)
-    order = np.argsort(tiles.level.sum(axis=1), kind="stable")
-    yardstick = np.empty_like(variance)
-    for part in np.array_split(order, max(1, min(24, len(order) // 40))):
-        yardstick[part] = np.median(variance[part])
-    keep: NDArray[np.bool_] = variance <= LARGEST_SHARE_OF_EDGES * np.maximum(yardstick, np.median(variance) * 0.05)
-    return keep
+def _lines(tiles: _Tiles, rounding: Rounding | None) -> tuple[FloatArray, FloatArray, NDArray[np.bool_]]:
+    """Read variance and shot (3,) of each channel, and the tiles (N,) without an edge that they were drawn through."""
+    variance = np.diagonal(tiles.covariance, axis1=1, axis2=2)
+    known = np.zeros_like(variance) if rounding is None else rounding.variance(tiles.level)
+    lines = np.array([_start(tiles.level[:, c], variance[:, c]) for c in range(3)])
+    keep = np.ones(len(variance), bool)
+    for share in LARGEST_SHARE_OF_EDGES:
+        expected = lines[:, 0] + lines[:, 1] * np.maximum(tiles.level, 0) + known
+        smooth = variance.sum(axis=1) <= share * expected.sum(axis=1)
+        keep = smooth if np.count_nonzero(smooth) >= FEWEST_TILES else keep
+        lines = np.array([_line(tiles.level[keep, c], variance[keep, c], known[keep, c]) for c in range(3)])
+    return lines[:, 0], lines[:, 1], keep
 
 
-def _line(level: FloatArray, total: FloatArray, rounding: Rounding | None) -> tuple[float, float]:
-    """Read variance and shot of ``total = read + shot * level + rounding``, both >= 0, tiles weighing by relative error."""
-    known = np.zeros_like(total) if rounding is None else rounding.variance(level)
+def _start(level: FloatArray, variance: FloatArray) -> tuple[float, float]:
+    """A first line that edges cannot lift: the lower quartile of tiles of like level, in logarithms, by the pinball loss."""
+    parts = np.array_split(np.argsort(level, kind="stable"), max(1, min(24, level.size // 20)))
+    levels = np.array([np.mean(level[part]) for part in parts])
+    lower = np.log(np.maximum([np.quantile(variance[part], 0.25) for part in parts], 1e-16))
+    read = np.concatenate([[0.0], np.geomspace(1e-11, 1e-2, 46)])[:, None, None]
+    shot = np.concatenate([[0.0], np.geomspace(1e-9, 1e-1, 41)])[None, :, None]
+    gap = lower - np.log(np.maximum(read + shot * np.maximum(levels, 0), 1e-16))
+    loss = np.where(gap > 0, 0.3 * gap, -0.7 * gap).sum(axis=-1)
+    best = np.unravel_index(np.argmin(loss), loss.shape)
+    return float(read[best[0], 0, 0]), float(shot[0, best[1], 0])
+
+
+def _line(level: FloatArray, total: FloatArray, known: FloatArray) -> tuple[float, float]:
+    """Read variance and shot of ``total = read + shot * level + known``, both >= 0, tiles weighing by relative error."""
     blurred_by_codes = total < SMALLEST_SHARE_OF_ROUNDING * known
     if np.any(~blurred_by_codes):
         level, total, known = (part[~blurred_by_codes] for part in (level, total, known))

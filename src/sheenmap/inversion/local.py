@@ -49,9 +49,8 @@ def fit_locally(
         return Local(thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, block=block)
     rows = np.flatnonzero(usable)
     own = _block_of(rows, shape, planes)
-    edge = _edge_blocks(planes.region)
-    attempts = [(rows, own)]
-    at_edge = edge.ravel()[own]
+    attempts = [(rows, planes.leader.ravel()[own])]
+    at_edge = _edge_blocks(planes.region).ravel()[own]
     for down, right in NEIGHBOURS:
         attempts.append(_from_neighbour(rows[at_edge], own[at_edge], planes, down, right))
     for members, blocks in attempts:
@@ -68,7 +67,7 @@ def around(
     rows: NDArray[np.intp], shape: tuple[int, ...], planes: Planes, blocks: NDArray[np.intp] | None = None
 ) -> tuple[FloatArray, FloatArray]:
     """Thickness to look around, and how far, for pixels with flat numbers ``rows``, by the planes of ``blocks`` or their own."""
-    blocks = _block_of(rows, shape, planes) if blocks is None else blocks
+    blocks = planes.leader.ravel()[_block_of(rows, shape, planes)] if blocks is None else blocks
     row, column = np.divmod(rows, shape[1])
     reference_nm = planes.at(row, column, *np.divmod(blocks, planes.region.shape[1]))
     return reference_nm, WINDOW_NM + WINDOW_IN_SCATTER * planes.scatter_nm.ravel()[blocks]

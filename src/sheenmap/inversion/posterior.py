@@ -63,6 +63,7 @@ def posterior_near(pixels: Pixels, table: Table, reference_nm: FloatArray, windo
 
 def _posterior(pixels: Pixels, table: Table, reference_nm: FloatArray, window_nm: FloatArray, doubts: Doubts) -> Posterior:
     whitener = Whitener(pixels.variance, pixels.correlation, doubts.shading_u)
+    reference_nm = np.clip(reference_nm, table.thickness_nm[0], table.thickness_nm[-1])
     low = np.clip(reference_nm - window_nm, table.thickness_nm[0], table.thickness_nm[-1])
     high = np.clip(reference_nm + window_nm, table.thickness_nm[0], table.thickness_nm[-1])
     thickness_nm = np.clip(reference_nm, low, high)

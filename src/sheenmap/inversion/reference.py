@@ -17,7 +17,11 @@ FLATTEST = 1e-3  # ridge on the slopes, so that a lone block stays level
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Planes:
-    """A plane for each block (h, w): thickness at its centre, slopes in nm per pixel, scatter of the blocks about it in nm."""
+    """A plane for each block (h, w): thickness at its centre, slopes in nm per pixel, scatter of the blocks about it in nm.
+
+    ``region`` is -1 where a block knows nothing, and ``leader`` the flat number of the block that speaks for it: itself, or
+    the nearest that knows.
+    """
 
     size: int
     centre_nm: FloatArray
@@ -25,6 +29,7 @@ class Planes:
     down_nm: FloatArray
     scatter_nm: FloatArray
     region: NDArray[np.intp]
+    leader: NDArray[np.intp]
 
     def at(self, row: NDArray[np.intp], column: NDArray[np.intp], block_row: NDArray[np.intp], block_column: NDArray[np.intp]) -> FloatArray:
         """Thickness of the planes of blocks (N,), carried on to pixels (N,)."""
@@ -58,13 +63,18 @@ def fit_planes(thickness_nm: FloatArray, sigma_nm: FloatArray, region: NDArray[n
     moments += ridge + np.eye(3) * 1e-12 + np.where(known, 0.0, 1.0)[..., None, None] * np.eye(3)
     solved = np.linalg.solve(moments, sums[..., None])[..., 0]
     left_over = np.maximum(square - np.einsum("hwi,hwi->hw", sums, solved), 0.0) / np.maximum(total, 1e-12)
-    planes = (value + solved[..., 0], solved[..., 1], solved[..., 2], np.sqrt(left_over))
-    nearest = tuple(distance_transform_edt(~known, return_distances=False, return_indices=True)) if not known.all() and known.any() else None
-    return Planes(size=size, region=region, **dict(zip(("centre_nm", "right_nm", "down_nm", "scatter_nm"), (_filled(p, known, nearest) for p in planes))))
+    return Planes(
+        size=size, region=region, leader=_leaders(known), centre_nm=value + solved[..., 0],
+        right_nm=solved[..., 1], down_nm=solved[..., 2], scatter_nm=np.sqrt(left_over),
+    )  # fmt: skip
 
 
-def _filled(values: FloatArray, known: BoolArray, nearest: tuple[NDArray[np.intp], ...] | None) -> FloatArray:
-    return values if nearest is None else np.where(known, values, values[nearest])
+def _leaders(known: BoolArray) -> NDArray[np.intp]:
+    own = np.arange(known.size).reshape(known.shape)
+    if known.all() or not known.any():
+        return own
+    row, column = distance_transform_edt(~known, return_distances=False, return_indices=True)
+    return np.asarray(own[row, column])
 
 
 def _shifted(values: NDArray, down: int, right: int, fill: float) -> NDArray:  # type: ignore[type-arg]
