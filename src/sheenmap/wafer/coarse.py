@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sheenmap.arrays import FloatArray
-from sheenmap.wafer.circle import Circle, algebraic_circle, radial_residual, robust_circle
+from sheenmap.wafer.circle import Circle, algebraic_circle, from_upright, radial_residual, robust_circle, robust_oval
 
 Copy = NDArray[np.float32]
 REDUCED_PX = 360  # longest side of the reduced copy: a disc of a tenth of the picture still has 36 pixels of radius
@@ -54,8 +54,8 @@ def reduced(picture: NDArray[np.generic]) -> tuple[Copy, float]:
     return np.atleast_3d(thinned), factor
 
 
-def find_edges(copy: Copy) -> Edges:
-    """Ridge of the gradient, all channels together, each in units of its own noise.
+def find_edges(copy: Copy, *, sharpness: float = SHARPNESS) -> Edges:
+    """Ridge of the gradient, all channels together, each in units of its own noise; 0 for ``sharpness`` keeps soft ones too.
 
     References
     ----------
@@ -64,7 +64,7 @@ def find_edges(copy: Copy) -> Edges:
     scales = [_gradient_noise(channel) for channel in np.moveaxis(copy, -1, 0)]
     strength, direction = _gradient(copy, scales, SMOOTHING_PX)
     smoother, _ = _gradient(copy, scales, SMOOTHER_PX)
-    strength[strength < SHARPNESS * smoother] = 0
+    strength[strength < sharpness * smoother] = 0
     return _thinned(strength, np.cos(direction), np.sin(direction))
 
 
@@ -111,12 +111,15 @@ def _thinned(strength: Copy, cosine: Copy, sine: Copy) -> Edges:
     )  # fmt: skip
 
 
-def find_hints(edges: Edges) -> list[Hint]:
-    """Circles that the edges support, the best covered first; duplicates of one circle are joined."""
+def find_hints(edges: Edges, *, slack: float = 1.0) -> list[Hint]:
+    """Circles that the edges support, the best covered first; duplicates of one circle are joined.
+
+    ``slack`` above 1 lets edges be farther from the circle, as those of a tilted disc are.
+    """
     hints: list[Hint] = []
-    for x, y in _voted_centres(edges):
-        for radius in _voted_radii(edges, x, y):
-            hint = _refined(edges, Circle(x_px=x, y_px=y, radius_px=radius))
+    for x, y in _voted_centres(edges, 1.5 * slack):
+        for radius in _voted_radii(edges, x, y, slack):
+            hint = _refined(edges, Circle(x_px=x, y_px=y, radius_px=radius), slack)
             if hint is not None and not any(_same(hint.circle, other.circle) for other in hints):
                 hints.append(hint)
     return sorted(hints, key=lambda hint: hint.covered * hint.visible, reverse=True)
@@ -127,7 +130,7 @@ def _same(a: Circle, b: Circle) -> bool:
     return float(np.hypot(a.x_px - b.x_px, a.y_px - b.y_px)) < near and abs(a.radius_px - b.radius_px) < near
 
 
-def _voted_centres(edges: Edges, *, most: int = 14) -> list[tuple[float, float]]:
+def _voted_centres(edges: Edges, spread: float, *, most: int = 14) -> list[tuple[float, float]]:
     """Places that many edge normals run through; cells of two pixels, up to half a picture beyond the frame."""
     height, width = edges.shape
     longest = max(height, width)
@@ -140,24 +143,27 @@ def _voted_centres(edges: Edges, *, most: int = 14) -> list[tuple[float, float]]
         inside = (x >= 0) & (x < columns) & (y >= 0) & (y < rows)
         cells = y[inside].astype(np.int64) * columns + x[inside].astype(np.int64)
         votes += np.bincount(cells, minlength=votes.size)
-    smooth = cv2.GaussianBlur(votes.reshape(rows, columns), (0, 0), 1.5)
+    smooth = cv2.GaussianBlur(votes.reshape(rows, columns), (0, 0), spread)
     crest = (smooth == cv2.dilate(smooth, np.ones((9, 9), np.uint8))) & (smooth > 0.15 * smooth.max())
     row, column = np.nonzero(crest)
     order = np.argsort(smooth[row, column])[::-1][:most]
     return [(2.0 * column[i] + 1 - width / 2, 2.0 * row[i] + 1 - height / 2) for i in order]
 
 
-def _voted_radii(edges: Edges, x: float, y: float, *, most: int = 5) -> list[float]:
+def _voted_radii(edges: Edges, x: float, y: float, slack: float, *, most: int = 5) -> list[float]:
     """Radii about a centre at which the most sectors hold an edge that faces the centre."""
     distance, sector, aligned = _seen_from(edges, x, y)
     longest = max(edges.shape)
     bins = np.arange(LEAST_RADIUS_SHARE * longest, MOST_RADIUS_SHARE * longest, 1.0)
-    reach = np.minimum(1.5 + 0.015 * bins, 5.0)
-    order = np.argsort(distance[aligned])
-    sorted_distance, sorted_sector = distance[aligned][order], sector[aligned][order]
-    first = np.searchsorted(sorted_distance, bins - reach)
-    last = np.searchsorted(sorted_distance, bins + reach)
-    counts = np.array([np.unique(sorted_sector[a:b]).size for a, b in zip(first, last)], float)
+    reach = slack * np.minimum(1.5 + 0.015 * bins, 5.0)
+    cell = np.floor(distance[aligned] - bins[0] + 0.5).astype(np.int64)
+    within = (cell >= 0) & (cell < bins.size)
+    votes = np.bincount(cell[within] * SECTORS + sector[aligned][within], minlength=bins.size * SECTORS)
+    summed = np.cumsum(np.pad(votes.reshape(bins.size, SECTORS), ((1, 0), (0, 0))), axis=0)
+    index = np.arange(bins.size)
+    first = np.clip(np.ceil(index - reach), 0, bins.size).astype(int)
+    last = np.clip(np.floor(index + reach) + 1, 0, bins.size).astype(int)
+    counts = np.count_nonzero(summed[last] > summed[first], axis=1).astype(float)
     chosen: list[float] = []
     while counts.size and len(chosen) < most and counts.max() >= 0.15 * SECTORS:
         best = float(bins[int(np.argmax(counts))])
@@ -174,17 +180,18 @@ def _seen_from(edges: Edges, x: float, y: float) -> tuple[FloatArray, NDArray[np
     return distance, sector, aligned
 
 
-def _refined(edges: Edges, circle: Circle) -> Hint | None:
+def _refined(edges: Edges, circle: Circle, slack: float) -> Hint | None:
     """The circle fitted to the edges near it, with the share of its rim that they cover; None when it dissolves."""
-    for reach in (4 + 0.03 * circle.radius_px, 3 + 0.015 * circle.radius_px, 2 + 0.01 * circle.radius_px):
+    fit = robust_circle if slack <= 1 else robust_oval
+    for reach in (slack * (4 + 0.03 * circle.radius_px), 3 + 0.015 * circle.radius_px, 2 + 0.01 * circle.radius_px):
         _, _, aligned = _seen_from(edges, circle.x_px, circle.y_px)
         near = aligned & (np.abs(radial_residual(circle, edges.x, edges.y)) < reach)
         start = algebraic_circle(edges.x[near], edges.y[near]) if near.sum() >= 12 else None
         if start is None:
             return None
-        if abs(start.radius_px - circle.radius_px) > reach:
+        if circle.oval != (0.0, 0.0) or abs(start.radius_px - circle.radius_px) > reach:
             start = circle
-        circle, _ = robust_circle(edges.x[near], edges.y[near], start, rounds=12)
+        circle, _ = fit(edges.x[near], edges.y[near], start, rounds=12)
     if not LEAST_RADIUS_SHARE * max(edges.shape) <= circle.radius_px <= 2 * max(edges.shape):
         return None
     return _judged(edges, circle)
@@ -197,8 +204,7 @@ def _judged(edges: Edges, circle: Circle) -> Hint | None:
     seen = np.zeros(SECTORS, bool)
     seen[sector[aligned & (np.abs(residual) < reach)]] = True
     angle = (np.arange(SECTORS) + 0.5) / SECTORS * 2 * np.pi - np.pi
-    x = circle.x_px + circle.radius_px * np.cos(angle)
-    y = circle.y_px + circle.radius_px * np.sin(angle)
+    x, y = from_upright(circle, circle.radius_px * np.cos(angle), circle.radius_px * np.sin(angle))
     height, width = edges.shape
     visible = (x > 1) & (x < width - 2) & (y > 1) & (y < height - 2)
     if not visible.any():

@@ -13,6 +13,7 @@ from sheenmap.wafer.rim import Rim, refine
 LEAST_SIDE_PX = 24
 LEAST_ARC = 0.25  # of the full turn: on less, centre and radius trade against each other by many times the rim's noise
 LEAST_COVER = 0.45  # of the rim inside the frame: clips and reflections may hide the rest
+LEAST_SUPPORT = 0.6  # the same in full resolution, where other outlines than a disc's part from it
 OTHER_PART = 0.6  # of the largest radius: smaller circles are reflections, dust or tools, not a second part
 MOST_HINTS = 8
 
@@ -62,13 +63,24 @@ def find_discs(picture: NDArray[np.generic], *, notch_near_deg: float | None = N
     if min(picture.shape[:2]) < LEAST_SIDE_PX:
         found = f"{picture.shape[1]} x {picture.shape[0]}"
         raise NoDiscError(f"a picture of {found} pixels is too small to find a disc: {LEAST_SIDE_PX} or more a side")
-    copy, factor = reduced(picture)
-    hints = find_hints(find_edges(copy))
-    rims = _outermost(_refined(picture, hints, factor))
+    rims, hints = _search(picture)
     if not rims:
         raise NoDiscError(_why_none(hints))
     marked = [_disc(picture, rim, notch_near_deg) for rim in rims]
     return tuple(_in_reading_order(marked))
+
+
+def _search(picture: NDArray[np.generic]) -> tuple[list[Rim], list[Hint]]:
+    """Rims, and the hints of the first attempt: sharp edges on circles first, then tilted discs, then blurred ones."""
+    copy, factor = reduced(picture)
+    sharp = find_edges(copy)
+    first = find_hints(sharp)
+    rims = _outermost(_refined(picture, first, factor))
+    if not rims:
+        rims = _outermost(_refined(picture, find_hints(sharp, slack=3.0), factor))
+    if not rims:
+        rims = _outermost(_refined(picture, find_hints(find_edges(copy, sharpness=0.0)), factor))
+    return rims, first
 
 
 def _refined(picture: NDArray[np.generic], hints: list[Hint], factor: float) -> list[Rim]:
@@ -76,10 +88,11 @@ def _refined(picture: NDArray[np.generic], hints: list[Hint], factor: float) -> 
     for hint in [hint for hint in hints if hint.covered >= LEAST_COVER and hint.visible >= LEAST_ARC][:MOST_HINTS]:
         scale = hint.circle
         start = Circle(
-            x_px=(scale.x_px + 0.5) * factor - 0.5, y_px=(scale.y_px + 0.5) * factor - 0.5, radius_px=scale.radius_px * factor
-        )
+            x_px=(scale.x_px + 0.5) * factor - 0.5, y_px=(scale.y_px + 0.5) * factor - 0.5,
+            radius_px=scale.radius_px * factor, oval=scale.oval,
+        )  # fmt: skip
         rim = refine(picture, start, 2.0 * factor + 2.0)
-        if rim is not None and rim.supported >= max(0.8 * LEAST_ARC, 0.35 * rim.visible):
+        if rim is not None and rim.supported >= max(0.8 * LEAST_ARC, LEAST_SUPPORT * rim.visible):
             rims.append(rim)
     return rims
 
@@ -101,7 +114,7 @@ def _distance(a: Rim, b: Rim) -> float:
 def _disc(picture: NDArray[np.generic], rim: Rim, notch_near_deg: float | None) -> Disc:
     mark = find_mark(picture, rim, near_deg=notch_near_deg)
     return Disc(
-        x_px=rim.circle.x_px, y_px=rim.circle.y_px, radius_px=rim.circle.radius_px, u_px=rim.circle.u_px,
+        x_px=rim.circle.x_px, y_px=rim.circle.y_px, radius_px=rim.circle.major_px, u_px=rim.circle.u_px, oval=rim.circle.oval,
         notch_deg=None if mark is None else mark.angle_deg,
         flat_px=0.0 if mark is None or mark.kind != "flat" else mark.depth_px,
         rim_share=rim.supported, in_frame=rim.visible,
@@ -120,7 +133,7 @@ def _in_reading_order(discs: list[Disc]) -> list[Disc]:
 
 
 def _why_none(hints: list[Hint]) -> str:
-    cut = [hint for hint in hints if hint.covered >= LEAST_COVER and hint.visible < LEAST_ARC]
+    cut = [hint for hint in hints if hint.covered >= 0.7 and hint.visible < LEAST_ARC]
     if cut:
         share = 100 * max(hint.visible for hint in cut)
         return (

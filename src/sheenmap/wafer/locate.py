@@ -5,6 +5,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sheenmap.arrays import BoolArray, FloatArray, read_only
+from sheenmap.wafer.coordinates import from_above
 from sheenmap.wafer.disc import find_disc
 from sheenmap.wafer.faults import RegionError
 from sheenmap.wafer.region import Disc, Region
@@ -63,8 +64,7 @@ def _disc_region(spec: RegionSpec, picture: NDArray[np.generic]) -> Region:
 
 def disc_inside(disc: Disc, shape: tuple[int, ...], exclusion_px: float) -> BoolArray:
     """True where a pixel's centre is on the disc, ``exclusion_px`` or more from its rim and from its flat. (H, W)."""
-    x = np.arange(shape[1]) - disc.x_px
-    y = np.arange(shape[0])[:, None] - disc.y_px
+    x, y = from_above(disc, np.arange(shape[1]) - disc.x_px, np.arange(shape[0])[:, None] - disc.y_px)
     reach = max(disc.radius_px - exclusion_px, 0.0)
     inside = x**2 + y**2 <= reach**2
     if disc.flat_px > 0 and disc.notch_deg is not None:

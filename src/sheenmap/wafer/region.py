@@ -16,6 +16,9 @@ class Disc:
     None when none was found. ``flat_px`` is how deep a flat cuts in (0: a notch, or none). ``u_px`` is the standard uncertainty
     of the fitted centre and radius. ``rim_share`` is the share of the full turn whose rim supports the fit, and ``in_frame``
     the share that the picture shows at all: below 1 the frame cuts the part.
+
+    A tilted disc looks oval; (s, t) = ``oval`` is (0, 0) for a round one. With M = [[1 + s, t], [t, 1 - s]] / (1 - |oval|), M times
+    what a pixel is from the centre (y down) is where it would be seen from straight above; radius, notch and flat are as seen so.
     """
 
     x_px: float
@@ -26,6 +29,7 @@ class Disc:
     flat_px: float = 0.0
     rim_share: float = 1.0
     in_frame: float = 1.0
+    oval: tuple[float, float] = (0.0, 0.0)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

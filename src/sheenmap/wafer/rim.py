@@ -1,16 +1,19 @@
 """The rim in full resolution: where brightness or colour steps along rays from the centre, to a fraction of a pixel."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy.ndimage import uniform_filter1d
 
 from sheenmap.arrays import BoolArray, FloatArray
-from sheenmap.wafer.circle import Circle, radial_residual, robust_circle
+from sheenmap.wafer.circle import MOST_OVAL, Circle, from_upright, radial_residual, robust_circle, robust_oval
 
 FEWEST_RAYS, MOST_RAYS = 240, 2400
 LEAST_STEP = 4.0  # standard deviations between inside and outside for a ray to count
+LEAST_OVAL = 0.0005  # of the radius: minor over major axis 0.999, a tilt of 2.6 degrees
+LEAST_FOR_OVAL = 0.6  # of the rim in the frame: on less, tilt and centre trade against each other
+SHARED_RAYS = 72  # of a turn: arcs of 5 degrees
 GRID_U_PX = 0.01  # what pixels cut by a hard rim leave after averaging over a full turn
 
 
@@ -66,14 +69,15 @@ def _gather(flat: NDArray[np.generic], index: NDArray[np.intp]) -> NDArray[np.fl
     return np.nan_to_num(flat[index].astype(np.float32), nan=0.0, posinf=0.0, neginf=0.0)
 
 
+def _points(circle: Circle, angle_rad: FloatArray, distance: FloatArray) -> tuple[FloatArray, FloatArray]:
+    return from_upright(circle, distance * np.cos(angle_rad), distance * np.sin(angle_rad))
+
+
 def along_rays(
     picture: NDArray[np.generic], circle: Circle, angle_rad: FloatArray, offset_px: FloatArray
 ) -> tuple[NDArray[np.float32], BoolArray]:
     """Values along rays, at ``offset_px`` (O,) from the circle outwards: (A, O, C), and (A, O) True inside the frame."""
-    distance = circle.radius_px + offset_px
-    x = circle.x_px + distance * np.cos(angle_rad)[:, None]
-    y = circle.y_px + distance * np.sin(angle_rad)[:, None]
-    return sample(picture, x, y)
+    return sample(picture, *_points(circle, angle_rad[:, None], circle.radius_px + offset_px))
 
 
 def refine(picture: NDArray[np.generic], start: Circle, reach_px: float) -> Rim | None:
@@ -115,12 +119,13 @@ def refine(picture: NDArray[np.generic], start: Circle, reach_px: float) -> Rim 
 
 
 def _stepped(picture: NDArray[np.generic], circle: Circle, reach: float) -> Circle | None:
-    """Fit to the strongest step of each ray."""
+    """Fit to the strongest step of each ray, averaged with its neighbours: a texture of the bench averages out, the rim stays."""
     angle_rad = ray_angles(circle.radius_px, most=900)
     spacing = max(0.5, reach / 40)
     half = max(2, round(max(2.0, reach / 5) / spacing))
     offsets = np.arange(-reach - half * spacing, reach + half * spacing + spacing / 2, spacing)
     values, inside = along_rays(picture, circle, angle_rad, offsets)
+    values = uniform_filter1d(values, max(1, angle_rad.size // SHARED_RAYS), axis=0, mode="wrap")
     sums = np.cumsum(np.pad(values, ((0, 0), (1, 0), (0, 0))), axis=1, dtype=np.float64)
     mean = (sums[:, half:] - sums[:, :-half]) / half  # of offsets i .. i + half - 1
     step = mean[:, :-half] - mean[:, half:]
@@ -134,11 +139,22 @@ def _stepped(picture: NDArray[np.generic], circle: Circle, reach: float) -> Circ
     seen = inside.all(axis=1)
     if seen.sum() < 24:
         return None
-    distance = circle.radius_px + edge
-    x, y = circle.x_px + distance * np.cos(angle_rad), circle.y_px + distance * np.sin(angle_rad)
-    fit, support = robust_circle(x[seen], y[seen], circle)
-    near = np.abs(radial_residual(fit, x[seen], y[seen])) < max(1.5, 0.25 * reach)
-    return fit if support.any() and near.mean() > 0.4 else None
+    x, y = _points(circle, angle_rad[seen], circle.radius_px + edge[seen])
+    fit, _ = _outline(x, y, circle, float(inside.all(axis=1).mean()))
+    near = np.abs(radial_residual(fit, x, y)) < max(1.5, 0.25 * reach)
+    return fit if near.mean() > 0.4 else None
+
+
+def _outline(x: FloatArray, y: FloatArray, start: Circle, visible: float) -> tuple[Circle, BoolArray]:
+    """A circle, or an oval where enough of it is seen and it is significantly one."""
+    round_fit, round_support = robust_circle(x, y, replace(start, oval=(0.0, 0.0)))
+    if visible < LEAST_FOR_OVAL:
+        return round_fit, round_support
+    oval_fit, oval_support = robust_oval(x, y, start)
+    size = float(np.hypot(*oval_fit.oval))
+    is_oval = LEAST_OVAL + 5 * oval_fit.u_px / oval_fit.radius_px < size < 0.99 * MOST_OVAL
+    fits = oval_support.sum() > 0.8 * round_support.sum()
+    return (oval_fit, oval_support) if is_oval and fits else (round_fit, round_support)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -194,10 +210,20 @@ def _crossing(profiles: Profiles, offsets: FloatArray) -> FloatArray:
 
 
 def _blur(picture: NDArray[np.generic], circle: Circle) -> float:
-    """Standard deviation of the rim's spread: half the distance between 84 % and 16 % of the median profile."""
-    reach = float(np.clip(0.1 * circle.radius_px, 6.0, 25.0))
-    offsets = np.arange(-reach, reach + 0.25, 0.5)
-    values, inside = along_rays(picture, circle, ray_angles(circle.radius_px, most=720), offsets)
+    """Standard deviation of the rim's spread, looked for over a wider reach only where the narrow one does not hold it."""
+    for reach in (6.0, 12.0, 25.0):
+        blur_px = _blur_within(picture, circle, float(min(reach, max(4.0, 0.15 * circle.radius_px))))
+        if blur_px < reach / 5:
+            break
+    return blur_px
+
+
+def _blur_within(picture: NDArray[np.generic], circle: Circle, reach: float) -> float:
+    """Half the distance between 84 % and 16 % of the median profile, of arcs of 5 degrees."""
+    angle_rad = ray_angles(circle.radius_px, most=720)
+    offsets = np.linspace(-reach, reach, 2 * int(np.ceil(2 * reach)) + 1)
+    values, inside = along_rays(picture, circle, angle_rad, offsets)
+    values = uniform_filter1d(values, max(1, angle_rad.size // SHARED_RAYS), axis=0, mode="wrap")
     profiles = _scaled(values, offsets, 0.6 * reach)
     usable = inside.all(axis=1) & (profiles.strength > LEAST_STEP)
     if usable.sum() < 12:
@@ -218,9 +244,7 @@ def _kept_area(picture: NDArray[np.generic], circle: Circle, window: float, blur
     usable = visible & (profiles.strength > LEAST_STEP) & (np.abs(edge) < 0.5 * window)
     if usable.sum() < 24:
         return None
-    distance = circle.radius_px + edge[usable]
-    x = circle.x_px + distance * np.cos(angle_rad[usable])
-    y = circle.y_px + distance * np.sin(angle_rad[usable])
-    fit, support = robust_circle(x, y, circle)
-    known = Circle(x_px=fit.x_px, y_px=fit.y_px, radius_px=fit.radius_px, u_px=float(np.hypot(fit.u_px, GRID_U_PX)))
+    x, y = _points(circle, angle_rad[usable], circle.radius_px + edge[usable])
+    fit, support = _outline(x, y, circle, float(visible.mean()))
+    known = replace(fit, u_px=float(np.hypot(fit.u_px, GRID_U_PX)))
     return Rim(circle=known, supported=float(support.sum() / angle_rad.size), visible=float(visible.mean()), blur_px=blur_px)
