@@ -11,9 +11,14 @@ from sheenmap.inversion.blocks import Blocks
 from sheenmap.inversion.candidates import KEPT, Candidates, find_candidates
 from sheenmap.inversion.likelihood import Doubts, covariance
 from sheenmap.inversion.order import choose_order, filled, link_width_nm
-from sheenmap.inversion.regions import DECIDED_GAP, Evidence, label_regions, settle_regions
+from sheenmap.inversion.regions import DECIDED_GAP, LARGEST_GAP, LISTED, Evidence, Shifts, boundary_gap, hold_on_shifts, label_regions
 from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE
 from sheenmap.lookup import Table, evaluate
+
+
+MOST_SWEEPS = 4
+SNAP_NM = 15.0  # a shifted block takes its own candidate when it has one this near
+APART_NM = 40.0  # rivals nearer than this are one minimum
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -63,23 +68,80 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     width_nm = link_width_nm(np.where(known[..., None], places, np.nan))
     chosen = choose_order(filled(places, known, nearest), _without_data(costs, known, nearest), width_nm)
     thickness_nm = np.take_along_axis(filled(places, known, nearest), chosen[..., None], axis=-1)[..., 0]
-    region = label_regions(thickness_nm, known, width_nm)
     evidence = _evidence(blocks, correlation)
-    chosen = np.where(known, chosen, 0)
-    orders = settle_regions(region, places, costs, chosen, evidence, table, doubts, width_nm)
-    thickness_nm = np.where(known, orders.thickness_nm.reshape(shape), thickness_nm)
-    region = label_regions(thickness_nm, known, width_nm)
+    moved = _move_regions(thickness_nm, known, places, evidence, table, doubts, width_nm)
     return Settled(
-        thickness_nm=thickness_nm,
-        sigma_nm=_sigma(evidence, thickness_nm.ravel(), table).reshape(shape),
-        region=region,
-        gap=orders.gap.reshape(shape),
-        alone=_alone(rivals_nm, rival_cost, thickness_nm, width_nm) & known,
-        others_nm=orders.others_nm.reshape(*shape, -1),
+        thickness_nm=moved.thickness_nm,
+        sigma_nm=_sigma(evidence, moved.thickness_nm.ravel(), table).reshape(shape),
+        region=moved.region,
+        gap=moved.gap,
+        alone=_alone(rivals_nm, rival_cost, moved.thickness_nm, width_nm) & known,
+        others_nm=moved.others_nm,
         rivals_nm=rivals_nm,
         rival_gap=_over_best(rival_cost),
         link_nm=width_nm,
     )
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class _Moved:
+    thickness_nm: FloatArray
+    region: NDArray[np.intp]
+    gap: FloatArray
+    others_nm: FloatArray
+
+
+def _move_regions(
+    thickness_nm: FloatArray, known: BoolArray, places: FloatArray, evidence: Evidence, table: Table, doubts: Doubts, width_nm: float
+) -> _Moved:
+    """Move regions to the order that they and their surest neighbours like best, until none moves."""
+    for _ in range(MOST_SWEEPS):
+        region = label_regions(thickness_nm, known, width_nm)
+        shifts = hold_on_shifts(region, thickness_nm, evidence, table, doubts)
+        rival = np.abs(shifts.shift_nm) > 2 * width_nm
+        anchored = shifts.gap[:, rival].min(axis=1, initial=np.inf) >= DECIDED_GAP
+        total = shifts.gap + boundary_gap(shifts, region, thickness_nm, anchored, width_nm)
+        best = np.where(rival | (shifts.shift_nm == 0), total, np.inf).argmin(axis=1)
+        shift_nm = np.where(total[np.arange(best.size), best] < 0, shifts.shift_nm[best], 0.0)
+        if not np.any(shift_nm):
+            break
+        thickness_nm = _shifted_to_candidates(thickness_nm, region, shifts, shift_nm, places)
+    return _with_odds(thickness_nm, region, shifts, np.where(rival, total, np.inf))
+
+
+def _shifted_to_candidates(
+    thickness_nm: FloatArray, region: NDArray[np.intp], shifts: Shifts, shift_nm: FloatArray, places: FloatArray
+) -> FloatArray:
+    number = np.searchsorted(shifts.labels, np.where(region >= 0, region, shifts.labels[0]))
+    shift = np.where(region >= 0, shift_nm[number], 0.0)
+    aim = thickness_nm + shift
+    distance = np.abs(places - aim[..., None])
+    distance[np.isnan(distance)] = np.inf
+    nearest = distance.argmin(axis=-1)[..., None]
+    close = np.take_along_axis(distance, nearest, axis=-1)[..., 0] <= SNAP_NM
+    snapped = np.where(close, np.take_along_axis(places, nearest, axis=-1)[..., 0], aim)
+    return np.where(shift != 0, snapped, thickness_nm)
+
+
+def _with_odds(thickness_nm: FloatArray, region: NDArray[np.intp], shifts: Shifts, rivals: FloatArray) -> _Moved:
+    order = np.argsort(rivals, axis=1)
+    listed = [_apart(rivals[r], shifts.shift_nm, order[r]) for r in range(len(rivals))]
+    number = np.searchsorted(shifts.labels, np.where(region >= 0, region, shifts.labels[0]))
+    known = region >= 0
+    gap = np.where(known, np.clip(rivals.min(axis=1, initial=LARGEST_GAP), 0.0, LARGEST_GAP)[number], 0.0)
+    others = np.where(known[..., None], thickness_nm[..., None] + np.array(listed)[number], np.nan)
+    return _Moved(thickness_nm=thickness_nm, region=region, gap=gap, others_nm=others)
+
+
+def _apart(cost: FloatArray, shift_nm: FloatArray, order: NDArray[np.intp]) -> FloatArray:
+    """Shifts (LISTED,) of the best undecided rivals, no two on one minimum; NaN where there are fewer."""
+    found: list[float] = []
+    for at in order:
+        if cost[at] >= DECIDED_GAP or len(found) == LISTED:
+            break
+        if all(abs(shift_nm[at] - other) > APART_NM for other in found):
+            found.append(float(shift_nm[at]))
+    return np.array(found + [np.nan] * (LISTED - len(found)))
 
 
 def _candidates(
