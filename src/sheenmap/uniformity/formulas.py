@@ -133,7 +133,7 @@ _ALL = (
     Formula(name="largest deviation over mean", expression="100 max|t-mean|/mean", source=COMMON, of_extremes=True,
             reduce=lambda t, _: _percent(_farthest(t, _mean(t)), _mean(t))),
     Formula(name="largest deviation over target", expression="100 max|t-target|/target", source=COMMON, of_extremes=True,
-            wants_target=True, at_least=1, reduce=lambda t, target: _percent(_farthest(t, np.full(t.shape[:-1], target)), target)),
+            wants_target=True, at_least=1, reduce=lambda t, target: _percent(_farthest(t, target), target)),
     Formula(name="mean absolute deviation over mean", expression="100 mean|t-mean|/mean", source=COMMON,
             reduce=lambda t, _: _percent(_absolute(t), _mean(t))),
     Formula(name="interquartile range over median", expression="100 (q75-q25)/median", source=COMMON,

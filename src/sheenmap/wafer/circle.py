@@ -157,7 +157,7 @@ def _tukey(scaled: FloatArray) -> FloatArray:
 
 
 def _design(circle: Circle, x: FloatArray, y: FloatArray, unknowns: int) -> FloatArray:
-    """How the outline's distance to each point falls with x, y, radius and, with five unknowns, the oval's s and t. (N, 3 or 5)."""
+    """How each residual falls with x, y, radius and, with five unknowns, the oval's s and t. (N, 3 or 5)."""
     u, v = upright(circle, x, y)
     distance = np.maximum(np.hypot(u, v), 1e-9)
     s, t = circle.oval

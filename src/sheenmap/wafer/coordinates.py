@@ -48,8 +48,8 @@ def picture_px(region: Region, x_mm: FloatArray | float, y_mm: FloatArray | floa
 def distance_mm(region: Region) -> FloatArray:
     """Distance of every pixel from the part's centre, (H, W) mm."""
     height, width = region.inside.shape
-    x = np.arange(width) - region.origin_px[0]
-    y = np.arange(height)[:, None] - region.origin_px[1]
+    x = np.arange(width, dtype=np.float64) - region.origin_px[0]
+    y = np.arange(height, dtype=np.float64)[:, None] - region.origin_px[1]
     return np.asarray(np.hypot(*from_above(region.disc, x, y)) * scale(region))
 
 

@@ -64,7 +64,8 @@ def _disc_region(spec: RegionSpec, picture: NDArray[np.generic]) -> Region:
 
 def disc_inside(disc: Disc, shape: tuple[int, ...], exclusion_px: float) -> BoolArray:
     """True where a pixel's centre is on the disc, ``exclusion_px`` or more from its rim and from its flat. (H, W)."""
-    x, y = from_above(disc, np.arange(shape[1]) - disc.x_px, np.arange(shape[0])[:, None] - disc.y_px)
+    columns, rows = np.arange(shape[1], dtype=np.float64), np.arange(shape[0], dtype=np.float64)[:, None]
+    x, y = from_above(disc, columns - disc.x_px, rows - disc.y_px)
     reach = max(disc.radius_px - exclusion_px, 0.0)
     inside = x**2 + y**2 <= reach**2
     if disc.flat_px > 0 and disc.notch_deg is not None:

@@ -17,8 +17,9 @@ class Disc:
     of the fitted centre and radius. ``rim_share`` is the share of the full turn whose rim supports the fit, and ``in_frame``
     the share that the picture shows at all: below 1 the frame cuts the part.
 
-    A tilted disc looks oval; (s, t) = ``oval`` is (0, 0) for a round one. With M = [[1 + s, t], [t, 1 - s]] / (1 - |oval|), M times
-    what a pixel is from the centre (y down) is where it would be seen from straight above; radius, notch and flat are as seen so.
+    A tilted disc looks oval; (s, t) = ``oval`` is (0, 0) for a round one. With M = [[1 + s, t], [t, 1 - s]] / (1 - |oval|),
+    M times a pixel's offset from the centre (y down) is its offset as seen from straight above; radius, notch and flat are
+    as seen so.
     """
 
     x_px: float
