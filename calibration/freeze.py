@@ -164,8 +164,8 @@ def freeze_colorimetry() -> None:
             "name": name,
             "also": name.replace("FL", "F") if name.startswith("FL") else "",
             "description": f"CIE illuminant {name}: {description}",
-            "source": f"CIE 15:2018 (LED) and CIE 15:2004 tables, {OF_COLOUR}",
-            "doi": "10.25039/TR.015.2018",
+            "source": f"CIE {'15:2018' if name.startswith('LED') else '15:2004'} tables, {OF_COLOUR}",
+            "doi": "10.25039/TR.015.2018" if name.startswith("LED") else "",
             "licence": COLOUR_LICENCE,
         }
         write(f"lamps/{name}.csv", head, "wavelength_nm,power", np.array([lamp.wavelengths, lamp.values]))

@@ -6,6 +6,7 @@ the list of contents may lead to another substance's file; a gas may be given as
 """
 
 import re
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import lru_cache
 from importlib import import_module
@@ -17,7 +18,7 @@ import numpy as np
 
 from sheenmap.arrays import FloatArray
 from sheenmap.catalogue.dispersion import index_of_formula
-from sheenmap.errors import CurveError, SheenmapError, UnknownNameError
+from sheenmap.errors import CurveError, SheenmapError, UnknownNameError, nearest_name
 from sheenmap.spectra import Spectrum
 
 VISIBLE_NM = (380.0, 780.0)
@@ -62,7 +63,7 @@ class _Curve:
         return np.interp(wavelength_nm, self.wavelength_nm, self.values)
 
 
-def database_page(text: str, *, must_cover_nm: tuple[float, float] | None = VISIBLE_NM) -> Spectrum:
+def database_page(text: str, *, must_cover_nm: tuple[float, float] | None = VISIBLE_NM, folder: Path | None = None) -> Spectrum:
     """The refractive index n - ik (W,) of a page of the database, on the page's own grid; k = 0 where the page has none.
 
     Parameters
@@ -71,6 +72,8 @@ def database_page(text: str, *, must_cover_nm: tuple[float, float] | None = VISI
         Shelf, book and page as in the page's address: "main/Si/Green-2008".
     must_cover_nm : (float, float), optional
         Refuse a page that does not reach over these wavelengths; None takes any page.
+    folder : Path, optional
+        A copy of the database (with ``catalog-nk.yml`` and ``data``) other than the package's.
 
     Raises
     ------
@@ -81,22 +84,22 @@ def database_page(text: str, *, must_cover_nm: tuple[float, float] | None = VISI
     CurveError
         The page has no n, lies outside ``must_cover_nm``, or holds what cannot be an index.
     """
-    page = read_page(text)
+    page = read_page(text, folder=folder)
     if must_cover_nm and not (page.wavelength_nm[0] <= must_cover_nm[0] and page.wavelength_nm[-1] >= must_cover_nm[1]):
         covers = f"{page.wavelength_nm[0]:g} to {page.wavelength_nm[-1]:g} nm"
         wanted = f"{must_cover_nm[0]:g} to {must_cover_nm[1]:g} nm"
-        raise CurveError(f"database page {page.address}: n and k reach from {covers}; {wanted} are needed")
+        raise CurveError(f"database page {page.address}: n and k together reach from {covers}; {wanted} are needed")
     return Spectrum(
         wavelength_nm=page.wavelength_nm,
         values=page.n - 1j * page.k,
         name=page.address,
-        source=f"open refractive-index database {database_version()}, CC0, page {page.address}: {page.title}",
+        source=f"open refractive-index database {_release(folder)}, CC0, page {page.address}: {page.title}",
     )
 
 
-def read_page(text: str) -> Page:
+def read_page(text: str, *, folder: Path | None = None) -> Page:
     """A page with its publication. Raises as ``database_page`` does, but for the range."""
-    address, path, title = _find(text)
+    address, path, title = _find(text, folder or _database_folder())
     content = _load_yaml(path)
     curves = _curves(address, content["DATA"])
     wavelength_nm = _grid(address, *curves)
@@ -117,7 +120,7 @@ def read_page(text: str) -> Page:
 
 def continue_formula(text: str, wavelength_nm: FloatArray) -> FloatArray:
     """The index n (W,) that a formula page gives at ``wavelength_nm``, also outside the range it was made for."""
-    address, path, _ = _find(text)
+    address, path, _ = _find(text, _database_folder())
     curve, _ = _curves(address, _load_yaml(path)["DATA"])
     if not curve.formula:
         raise ValueError(f"database page {address} is a table")
@@ -127,6 +130,10 @@ def continue_formula(text: str, wavelength_nm: FloatArray) -> FloatArray:
 def database_version() -> str:
     """The release of the database that is installed. Raises ``MissingDatabaseError``."""
     return str(getattr(_package(), "DATABASE_VERSION", "of unknown release"))
+
+
+def _release(folder: Path | None) -> str:
+    return f"in {folder}" if folder else database_version()
 
 
 def _package() -> ModuleType:
@@ -147,10 +154,9 @@ def _load_yaml(path: Path) -> Any:
     return yaml.load(path.read_text(encoding="utf-8"), Loader=getattr(yaml, "CBaseLoader", yaml.BaseLoader))
 
 
-@lru_cache(maxsize=1)
-def _contents() -> dict[tuple[str, str, str], tuple[str, str, Path]]:
+@lru_cache(maxsize=2)
+def _contents(folder: Path) -> dict[tuple[str, str, str], tuple[str, str, Path]]:
     """(shelf, book, page), spaces as underscores -> address, title, file. A page listed twice keeps its first entry."""
-    folder = _database_folder()
     contents: dict[tuple[str, str, str], tuple[str, str, Path]] = {}
     for shelf in _load_yaml(folder / "catalog-nk.yml"):
         for book in shelf.get("content", []):
@@ -182,15 +188,22 @@ def _key(names: tuple[str, ...]) -> tuple[str, str, str]:
     return shelf, book, page
 
 
-def _find(text: str) -> tuple[str, Path, str]:
+def _find(text: str, folder: Path) -> tuple[str, Path, str]:
     parts = tuple(text.split("/"))
-    contents = _contents()
+    contents = _contents(folder)
     found = contents.get(_key(parts)) if len(parts) == 3 else None
     if found is None:
-        of_book = [address for key, (address, _, _) in contents.items() if key[:2] == tuple(parts[:2])]
-        raise UnknownNameError("database page", text, of_book or [address for address, _, _ in contents.values()])
+        raise UnknownNameError("database page", text, _pages_of_nearest_book(contents.values(), "/".join(parts[:2])))
     address, title, path = found
     return address, path, title
+
+
+def _pages_of_nearest_book(pages: Iterable[tuple[str, str, Path]], book: str) -> list[str]:
+    """Addresses of the pages in the book most like "main/Si": another book's page is no help to one who mistyped a page."""
+    by_book: dict[str, list[str]] = {}
+    for address, _, _ in pages:
+        by_book.setdefault(address.rsplit("/", 1)[0], []).append(address)
+    return by_book.get(book) or by_book.get(nearest_name(book, by_book), [])
 
 
 def _curves(address: str, blocks: list[dict[str, str]]) -> tuple[_Curve, _Curve | None]:

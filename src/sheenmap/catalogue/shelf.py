@@ -4,6 +4,7 @@ A file is a CSV whose first lines are ``# key: value``. A file without them stil
 """
 
 import re
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import lru_cache
 from importlib.resources import files
@@ -42,25 +43,33 @@ def shelf(kind: str) -> dict[str, Record]:
     """
     if kind not in FOLDERS:
         raise ValueError(f"kind {kind!r}; allowed: {', '.join(FOLDERS)}")
-    folder = data_folder() / FOLDERS[kind]
+    return records_in(data_folder() / FOLDERS[kind], kind)
+
+
+def records_in(folder: Traversable, kind: str) -> dict[str, Record]:
+    """Every CSV file of a folder, by its name."""
     records = [_record(kind, file) for file in folder.iterdir() if file.name.endswith(".csv")]
     return {record.name: record for record in sorted(records, key=lambda record: (record.name.casefold(), record.name))}
 
 
-@lru_cache(maxsize=len(FOLDERS))
-def _by_folded_name(kind: str) -> dict[str, Record]:
+def by_folded_name(records: Iterable[Record]) -> dict[str, Record]:
+    """Files by each of their names, folded; a file's own name goes before another's alias."""
+    records = tuple(records)
     by_name: dict[str, Record] = {}
-    records = shelf(kind).values()
     for record in records:
         for also in record.also:
             by_name.setdefault(fold(also), record)
-    by_name.update({fold(record.name): record for record in records})  # a file's own name goes before another's alias
-    return by_name
+    return by_name | {fold(record.name): record for record in records}
+
+
+@lru_cache(maxsize=len(FOLDERS))
+def _folded(kind: str) -> dict[str, Record]:
+    return by_folded_name(shelf(kind).values())
 
 
 def find(kind: str, name: str) -> Record:
     """The file that ``name`` or one of its other names stands for. Raises ``UnknownNameError``."""
-    record = _by_folded_name(kind).get(fold(name))
+    record = _folded(kind).get(fold(name))
     if record is None:
         raise UnknownNameError(kind, name, all_names(kind))
     return record

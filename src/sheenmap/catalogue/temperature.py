@@ -18,7 +18,7 @@ BLACKBODY_K = (500.0, 100000.0)  # cooler, no visible light is left; hotter, the
 REFERENCE_NM = 560.0  # where both are 100, as in CIE 15
 
 _BLACKBODY_NM = np.arange(300.0, 1101.0, 2.0)
-_NAME = re.compile(r"(daylight|blackbody)(?:[\s_-]+(.*))?", re.IGNORECASE)
+_NAME = re.compile(r"(daylight|blackbody)(?:(?:\s+|[_-])(.*))?", re.IGNORECASE)  # a minus after a space is a sign, no joint
 _KELVIN = re.compile(r"(\d+(?:\.\d+)?)\s*K?", re.IGNORECASE)
 
 
