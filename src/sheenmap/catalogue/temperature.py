@@ -104,8 +104,7 @@ def daylight(temperature_k: float) -> Spectrum:
     m2 = round((0.0300 - 31.4424 * x + 30.0717 * y) / scale, 3)
     return Spectrum(
         wavelength_nm=wavelength_nm,
-        # at 25000 K the sum is never below zero from 300 nm on; the bound is against rounding of the tabulated components
-        values=np.maximum(s0 + m1 * s1 + m2 * s2, 0.0),
+        values=s0 + m1 * s1 + m2 * s2,
         name=f"daylight {temperature_k:g}",
         source="CIE 15, daylight of a correlated colour temperature",
     )

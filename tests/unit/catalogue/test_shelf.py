@@ -38,7 +38,7 @@ def test_an_own_name_goes_before_the_alias_of_another(tmp_path):
     assert by_name["glass"].file.name == "a.csv"
 
 
-@pytest.mark.parametrize("spelling", ["soap water", "Soap-Water", "SOAP_WATER", "  soap   water "])
+@pytest.mark.parametrize("spelling", ["soap water", "Soap-Water", "SOAP_WATER", "  soap   water ", "soap - water"])
 def test_case_and_joints_of_words_do_not_count(spelling):
     assert shelf.find("material", spelling).name == "soap water"
 
