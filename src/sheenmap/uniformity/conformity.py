@@ -13,7 +13,8 @@ from scipy.special import ndtr, ndtri
 from sheenmap.arrays import FloatArray
 
 Proof = Literal["conformity", "nonconformity", "neither"]
-GRID_REACH, GRID_POINTS = 8.0, 2001  # of the shared error, in its standard deviations
+GRID_REACH, GRID_POINTS = 8.0, 3201  # of the shared error, in its standard deviations
+NEGLIGIBLE = 0.005  # of the shared uncertainty: one step of that grid
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -114,9 +115,11 @@ def all_conform(values: ArrayLike, u_local: ArrayLike, u_common: float, limits: 
         return float("nan")
     if u_common <= 0:
         return float(np.prod(conformance(y, local, limits)))
-    spacing = 2 * GRID_REACH / (GRID_POINTS - 1)
+    if local.max() < NEGLIGIBLE * u_common:  # one interval of the shared error keeps all of them inside
+        within = Limits(low=float(np.max(limits.low - y)), high=float(np.min(limits.high - y)))
+        return float(conformance(0.0, u_common, within)) if within.low < within.high else 0.0
     error = np.linspace(-GRID_REACH, GRID_REACH, GRID_POINTS)
     density = np.exp(-(error**2) / 2)
-    soft = np.maximum(local, 0.5 * spacing * u_common)  # a step sharper than the grid would be cut at random
+    soft = np.maximum(local, NEGLIGIBLE * u_common)  # a step sharper than the grid would be cut at random
     given = conformance(y[:, None] + u_common * error, soft[:, None], limits)
     return float(np.sum(density * np.prod(given, axis=0)) / np.sum(density))

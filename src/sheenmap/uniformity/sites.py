@@ -9,6 +9,7 @@ from sheenmap.uniformity.records import SiteReading
 from sheenmap.wafer import Sites
 
 LEAST_CLAIMED = 0.5  # of the spot's pixels inside the region
+FAR, MOST_FAR = 6.0, 0.2  # a fifth of the pixels six standard deviations off: the spot holds two thicknesses, not one
 HUBER_CUT = 1.5  # standard deviations: 96 % efficient on normal noise
 
 
@@ -44,7 +45,7 @@ def read_sites(
     Notes
     -----
     The mean is Huber's. Its local uncertainty comes from the larger of the pixels' own sigma and the scatter found in the
-    spot: where a spot holds a step, or sigma is too small, the reading says so by a larger u.
+    spot, so that a sigma that is too small shows. Where the spot holds a step, by how far the plain mean is off is added.
 
     References
     ----------
@@ -110,4 +111,6 @@ def _robust_mean(values: FloatArray, sigma: FloatArray, correlation: float) -> t
     scatter = float(np.sqrt(np.sum(residual**2) / max(values.size - 1, 1)))
     inner = max(float(np.mean(np.abs(values - centre) <= HUBER_CUT * scale)), 0.5)
     effective = max(values.size / correlation, 1.0)
-    return centre, max(noise, scatter / inner if values.size > 1 else 0.0) / float(np.sqrt(effective))
+    local = max(noise, scatter / inner if values.size > 1 else 0.0) / float(np.sqrt(effective))
+    is_split = float(np.mean(np.abs(values - centre) > FAR * scale)) > MOST_FAR
+    return centre, float(np.hypot(local, np.mean(values) - centre)) if is_split else local

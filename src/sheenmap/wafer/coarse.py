@@ -144,7 +144,7 @@ def _voted_centres(edges: Edges, spread: float, *, most: int = 14) -> list[tuple
         cells = y[inside].astype(np.int64) * columns + x[inside].astype(np.int64)
         votes += np.bincount(cells, minlength=votes.size)
     smooth = cv2.GaussianBlur(votes.reshape(rows, columns), (0, 0), spread)
-    crest = (smooth == cv2.dilate(smooth, np.ones((9, 9), np.uint8))) & (smooth > 0.15 * smooth.max())
+    crest = (smooth == cv2.dilate(smooth, np.ones((9, 9), np.uint8))) & (smooth > 0.1 * smooth.max())
     row, column = np.nonzero(crest)
     order = np.argsort(smooth[row, column])[::-1][:most]
     return [(2.0 * column[i] + 1 - width / 2, 2.0 * row[i] + 1 - height / 2) for i in order]

@@ -78,9 +78,8 @@ def _clips(scene, picture, right, down):
     for angle_deg in scene.clips_deg:
         cosine, sine = np.cos(np.deg2rad(angle_deg)), np.sin(np.deg2rad(angle_deg))
         along, across = right * cosine - down * sine, right * sine + down * cosine
-        picture[(np.abs(across) < 0.06 * scene.radius) & (along > 0.95 * scene.radius) & (along < 1.1 * scene.radius)] = (
-            scene.clip_level
-        )
+        reach = (along > 0.95 * scene.radius) & (along < 1.1 * scene.radius)
+        picture[(np.abs(across) < 0.06 * scene.radius) & reach] = scene.clip_level
 
 
 def _reflections(scene, picture, rng):
@@ -90,10 +89,11 @@ def _reflections(scene, picture, rng):
         axes = (int(scene.radius * rng.uniform(0.05, 0.25)), int(scene.radius * rng.uniform(0.02, 0.2)))
         layer = np.zeros(picture.shape[:2], np.float32)
         cv2.ellipse(layer, centre, axes, rng.uniform(0, 180), 0, 360, 1.0, -1)
-        picture += (rng.uniform(0.1, 0.4) * cv2.GaussianBlur(layer, (0, 0), 1.5))[..., None]
+        soft = cv2.GaussianBlur(layer, (0, 0), 1.5)
+        picture += (rng.uniform(0.1, 0.4) * soft)[..., None]
     for _ in range(scene.dust):
-        cv2.circle(picture, (int(rng.uniform(0, picture.shape[1])), int(rng.uniform(0, picture.shape[0]))), int(rng.uniform(1, 5)),
-                   tuple(rng.uniform(0, 1, 3)), -1)  # fmt: skip
+        place = (int(rng.uniform(0, picture.shape[1])), int(rng.uniform(0, picture.shape[0])))
+        cv2.circle(picture, place, int(rng.uniform(1, 5)), tuple(rng.uniform(0, 1, 3)), -1)
 
 
 def random_scene(seed: int) -> Scene:
