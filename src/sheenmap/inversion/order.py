@@ -6,14 +6,19 @@ semi-global aggregation: the least cost of all paths that end in a block, along 
 Trans. PAMI 30, 328, 2008).
 """
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import median_filter
 
 from sheenmap.arrays import BoolArray, FloatArray
 
 STEP_COST = 12.0  # chi-square; odds of e^-6 that two neighbouring blocks have a step between them
 DATA_CAP = 40.0
-NARROWEST_LINK_NM, WIDEST_LINK_NM = 8.0, 40.0
+NARROWEST_LINK_NM, WIDEST_LINK_NM = 8.0, 60.0
+LINK_IN_USUAL = 5.0
+TREND_REACH = 15  # blocks over which the trend of the film is taken
 DIRECTIONS = ((0, 1), (0, -1), (1, 0), (-1, 0), (1, 1), (-1, -1), (1, -1), (-1, 1))
 
 
@@ -24,29 +29,55 @@ def link_width_nm(thickness_nm: FloatArray) -> float:
         nearest = np.nanmin(np.abs(here - np.where(np.isnan(beside), np.inf, beside)), axis=-1, initial=np.inf)
     known = nearest[np.isfinite(nearest)]
     usual = float(np.median(known)) if known.size else 0.0
-    return float(np.clip(NARROWEST_LINK_NM + 4 * usual, NARROWEST_LINK_NM, WIDEST_LINK_NM))
+    return float(np.clip(NARROWEST_LINK_NM + LINK_IN_USUAL * usual, NARROWEST_LINK_NM, WIDEST_LINK_NM))
 
 
-def choose_order(thickness_nm: FloatArray, chi_square: FloatArray, width_nm: float) -> NDArray[np.intp]:
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Trend:
+    """How thickness usually changes from a block to its right and its lower neighbour (h, w), in nm."""
+
+    right_nm: FloatArray
+    down_nm: FloatArray
+
+
+def no_trend(shape: tuple[int, int]) -> Trend:
+    """A trend that is level everywhere."""
+    return Trend(right_nm=np.zeros(shape), down_nm=np.zeros(shape))
+
+
+def trend_of(thickness_nm: FloatArray, width_nm: float) -> Trend:
+    """The middle of the changes around each block (h, w), those of steps left out."""
+    right = np.pad(np.diff(thickness_nm, axis=1), ((0, 0), (0, 1)), mode="edge")
+    down = np.pad(np.diff(thickness_nm, axis=0), ((0, 1), (0, 0)), mode="edge")
+    return Trend(right_nm=_middle(np.clip(right, -width_nm, width_nm)), down_nm=_middle(np.clip(down, -width_nm, width_nm)))
+
+
+def _middle(change_nm: FloatArray) -> FloatArray:
+    reach = int(min(TREND_REACH, (min(change_nm.shape) - 1) // 2 * 2 + 1))
+    return np.asarray(median_filter(change_nm, size=reach, mode="nearest"))
+
+
+def choose_order(thickness_nm: FloatArray, chi_square: FloatArray, width_nm: float, trend: Trend) -> NDArray[np.intp]:
     """Position (h, w) of the chosen candidate of each block, of candidates (h, w, K); all blocks have one or more."""
     data = np.minimum(chi_square - chi_square[..., :1], DATA_CAP)
     data[~np.isfinite(chi_square)] = np.inf
     place_nm = np.where(np.isfinite(chi_square), thickness_nm, -1e9)
     total = -(len(DIRECTIONS) - 1) * np.where(np.isfinite(data), data, 0.0)
     for down, right in DIRECTIONS:
-        total += _aggregate(place_nm, data, width_nm, down, right)
+        expected_nm = down * trend.down_nm + right * trend.right_nm
+        total += _aggregate(place_nm, data, width_nm, down, right, expected_nm)
     return np.argmin(np.where(np.isfinite(data), total, np.inf), axis=-1)
 
 
 def link_cost(difference_nm: FloatArray, width_nm: float) -> FloatArray:
     """Cost of two neighbours whose thicknesses differ by ``difference_nm``."""
-    return np.asarray(STEP_COST * np.minimum(np.abs(difference_nm) / width_nm, 1.0))
+    return np.asarray(STEP_COST * np.minimum((difference_nm / width_nm) ** 2, 1.0))
 
 
-def _aggregate(place_nm: FloatArray, data: FloatArray, width_nm: float, down: int, right: int) -> FloatArray:
-    """Least path cost (h, w, K) along one direction; lines of blocks are walked together."""
+def _aggregate(place_nm: FloatArray, data: FloatArray, width_nm: float, down: int, right: int, expected_nm: FloatArray) -> FloatArray:
+    """Least path cost (h, w, K) along one direction, in which thickness is expected to change by ``expected_nm`` (h, w)."""
     if down == 0:
-        swapped = _aggregate(place_nm.swapaxes(0, 1), data.swapaxes(0, 1), width_nm, right, 0)
+        swapped = _aggregate(place_nm.swapaxes(0, 1), data.swapaxes(0, 1), width_nm, right, 0, expected_nm.T)
         return np.asarray(swapped.swapaxes(0, 1))
     cost = np.empty_like(data)
     rows = range(len(data)) if down > 0 else range(len(data) - 1, -1, -1)
@@ -54,7 +85,8 @@ def _aggregate(place_nm: FloatArray, data: FloatArray, width_nm: float, down: in
     for row in rows:
         cost[row] = data[row]
         if before is not None:
-            cost[row] += _arriving(_shifted(place_nm[before], right), _shifted(cost[before], right), place_nm[row], width_nm)
+            from_nm, from_cost = _shifted(place_nm[before], right), _shifted(cost[before], right)
+            cost[row] += _arriving(from_nm + expected_nm[row][:, None], from_cost, place_nm[row], width_nm)
         before = row
     return cost
 

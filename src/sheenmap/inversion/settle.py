@@ -10,12 +10,18 @@ from sheenmap.arrays import BoolArray, FloatArray
 from sheenmap.inversion.blocks import Blocks
 from sheenmap.inversion.candidates import KEPT, Candidates, find_candidates
 from sheenmap.inversion.likelihood import Doubts, covariance
-from sheenmap.inversion.order import choose_order, filled, link_width_nm
-from sheenmap.inversion.regions import DECIDED_GAP, LARGEST_GAP, LISTED, Evidence, Shifts, boundary_gap, hold_on_shifts, label_regions
+from sheenmap.inversion.order import choose_order, filled, link_width_nm, no_trend, trend_of
+from sheenmap.inversion.regions import DECIDED_GAP, LARGEST_GAP, LISTED, Evidence, Shifts, boundary_gap, hold_on_shifts, label_regions, neighbours
 from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE
 from sheenmap.lookup import Table, evaluate
 
 
+ROUNDS = 2
+TILE = 16  # blocks
+SLIP_NM = 20.0  # minima nearer to the chosen one are the two sides of one turning point
+SLIPPERY_SHARE = 0.05  # of a tile's blocks
+RIVAL_NM = 30.0
+TORN_NM = 12.0  # of scatter about a plane, in a slippery tile
 MOST_SWEEPS = 4
 SNAP_NM = 15.0  # a shifted block takes its own candidate when it has one this near
 APART_NM = 40.0  # rivals nearer than this are one minimum
@@ -66,10 +72,10 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
         return _nothing(shape)
     nearest = tuple(distance_transform_edt(~known, return_distances=False, return_indices=True))
     width_nm = link_width_nm(np.where(known[..., None], places, np.nan))
-    chosen = choose_order(filled(places, known, nearest), _without_data(costs, known, nearest), width_nm)
-    thickness_nm = np.take_along_axis(filled(places, known, nearest), chosen[..., None], axis=-1)[..., 0]
+    thickness_nm = _ordered(filled(places, known, nearest), _without_data(costs, known, nearest), width_nm)
     evidence = _evidence(blocks, correlation)
-    moved = _move_regions(thickness_nm, known, places, evidence, table, doubts, width_nm)
+    slippery = _slippery_tiles(thickness_nm, places, costs, known, width_nm)
+    moved = _move_regions(thickness_nm, known, slippery, places, evidence, table, doubts, width_nm)
     return Settled(
         thickness_nm=moved.thickness_nm,
         sigma_nm=_sigma(evidence, moved.thickness_nm.ravel(), table).reshape(shape),
@@ -83,6 +89,16 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     )
 
 
+def _ordered(places: FloatArray, costs: FloatArray, width_nm: float) -> FloatArray:
+    """Thickness (h, w) of the chosen candidates: once on a level film, then on one with the trend that this has shown."""
+    trend = no_trend(places.shape[:2])
+    for _ in range(ROUNDS):
+        chosen = choose_order(places, costs, width_nm, trend)
+        thickness_nm = np.take_along_axis(places, chosen[..., None], axis=-1)[..., 0]
+        trend = trend_of(thickness_nm, width_nm)
+    return np.asarray(thickness_nm)
+
+
 @dataclass(frozen=True, kw_only=True, eq=False)
 class _Moved:
     thickness_nm: FloatArray
@@ -91,22 +107,64 @@ class _Moved:
     others_nm: FloatArray
 
 
+def _slippery_tiles(thickness_nm: FloatArray, places: FloatArray, costs: FloatArray, known: BoolArray, width_nm: float) -> NDArray[np.intp]:
+    """Number of the tile (h, w) where order could slip from block to block without a step, -1 where it cannot.
+
+    It can where noise makes blocks fit at thicknesses between two orders, as it does where colour has faded.
+    """
+    away = np.abs(places - thickness_nm[..., None])
+    between = np.any((_over_best(costs) < DECIDED_GAP) & (away > SLIP_NM) & (away < width_nm + SLIP_NM), axis=-1) & known
+    row, column = np.indices(known.shape) // TILE
+    tile = row * (column.max() + 1) + column
+    share = np.bincount(tile.ravel(), weights=between.ravel()) / np.maximum(np.bincount(tile.ravel(), weights=known.ravel()), 1)
+    return np.where(share[tile] > SLIPPERY_SHARE, tile, -1)
+
+
 def _move_regions(
-    thickness_nm: FloatArray, known: BoolArray, places: FloatArray, evidence: Evidence, table: Table, doubts: Doubts, width_nm: float
-) -> _Moved:
-    """Move regions to the order that they and their surest neighbours like best, until none moves."""
+    thickness_nm: FloatArray, known: BoolArray, slippery: NDArray[np.intp], places: FloatArray,
+    evidence: Evidence, table: Table, doubts: Doubts, width_nm: float,
+) -> _Moved:  # fmt: skip
+    """Move regions to the order that they and their surest neighbours like best, until none moves.
+
+    Slippery tiles are regions of their own, and only their own evidence decides them.
+    """
     for _ in range(MOST_SWEEPS):
         region = label_regions(thickness_nm, known, width_nm)
+        region = np.where((region >= 0) & (slippery >= 0), region + (slippery + 1) * region.size, region)
         shifts = hold_on_shifts(region, thickness_nm, evidence, table, doubts)
-        rival = np.abs(shifts.shift_nm) > 2 * width_nm
+        rival = np.abs(shifts.shift_nm) > 2 * min(width_nm, RIVAL_NM)
         anchored = shifts.gap[:, rival].min(axis=1, initial=np.inf) >= DECIDED_GAP
-        total = shifts.gap + boundary_gap(shifts, region, thickness_nm, anchored, width_nm)
+        steps = boundary_gap(shifts, region, thickness_nm, anchored, width_nm)
+        total = shifts.gap + np.where(shifts.labels[:, None] >= region.size, np.minimum(steps, 0.0), steps)
         best = np.where(rival | (shifts.shift_nm == 0), total, np.inf).argmin(axis=1)
         shift_nm = np.where(total[np.arange(best.size), best] < 0, shifts.shift_nm[best], 0.0)
         if not np.any(shift_nm):
             break
         thickness_nm = _shifted_to_candidates(thickness_nm, region, shifts, shift_nm, places)
-    return _with_odds(thickness_nm, region, shifts, np.where(rival, total, np.inf))
+    rivals = np.where(rival, total, np.inf)
+    slipped = (shifts.labels >= region.size) & _is_torn(thickness_nm, region, shifts.labels, width_nm)
+    rivals[slipped] = np.where(rival & (rivals[slipped] == rivals[slipped].min(axis=1, keepdims=True)), 0.0, rivals[slipped])
+    return _with_odds(thickness_nm, region, shifts, rivals)
+
+
+def _is_torn(thickness_nm: FloatArray, region: NDArray[np.intp], labels: NDArray[np.intp], width_nm: float) -> BoolArray:
+    """Regions (R,) that are no smooth piece of film: far from a plane, or parted by a step from most of what they touch."""
+    number = np.searchsorted(labels, np.where(region >= 0, region, labels[0]))
+    torn = np.zeros(labels.size, bool)
+    for r in np.flatnonzero(labels >= region.size):
+        row, column = np.nonzero((number == r) & (region >= 0))
+        place_nm = thickness_nm[row, column]
+        base = np.column_stack([np.ones(row.size), row - row.mean(), column - column.mean()])
+        left = place_nm - base @ np.linalg.lstsq(base, place_nm, rcond=None)[0]
+        torn[r] = 1.48 * np.median(np.abs(left)) > TORN_NM or np.mean(np.abs(left) > 3 * TORN_NM) > SLIPPERY_SHARE
+    first, second = neighbours(region >= 0)
+    flat, place_nm = number.ravel(), thickness_nm.ravel()
+    differs = flat[first] != flat[second]
+    first, second = first[differs], second[differs]
+    steps = (np.abs(place_nm[first] - place_nm[second]) > width_nm).astype(float)
+    both = np.concatenate([flat[first], flat[second]])
+    links = np.bincount(both, minlength=labels.size)
+    return torn | (np.bincount(both, weights=np.tile(steps, 2), minlength=labels.size) > 0.5 * np.maximum(links, 1))
 
 
 def _shifted_to_candidates(
