@@ -15,6 +15,7 @@ HUES = (
     (284.0, "blue", "blue"), (312.0, "violet", "violet"), (346.0, "purple", "purple"), (360.0, "pink", "crimson"),
 )  # fmt: skip
 DARK_WORD_BELOW = 50.0  # lightness where the second word takes over
+TINTS = ((45.0, "reddish"), (102.0, "yellowish"), (200.0, "greenish"), (284.0, "bluish"), (346.0, "purplish"), (360.0, "reddish"))
 LIGHTNESS = ((25.0, "very dark "), (45.0, "dark "), (72.0, ""), (1e9, "light "))
 GREY_LIGHTNESS = ((25.0, "very dark "), (45.0, "dark "), (70.0, ""), (1e9, "light "))
 
@@ -28,7 +29,8 @@ def colour_name(colour: FloatArray) -> str:
 
     ==================  =================================================================================
     C below 5           black (L < 8), very dark grey (< 25), dark grey (< 45), grey (< 70), light grey, white (L > 92)
-    C 5 to 12           the same greys, with the hue before the grey ("light blue-grey")
+    C 5 to 12           the same greys with a tint ("light bluish grey"): reddish (h 346 to 45), yellowish (to 102), greenish
+                        (to 200), bluish (to 284), purplish (to 346)
     C above 12          "very dark" (L < 25), "dark" (< 45), none (< 72), "light"; then the hue:
     h 346 to 18         pink, or crimson where L < 50
     h 18 to 45          red
@@ -45,11 +47,10 @@ def colour_name(colour: FloatArray) -> str:
     lightness, chroma, hue_deg = (float(part) for part in lch(np.asarray(colour, dtype=float)))
     if chroma < GREY_BELOW:
         return _grey(lightness)
-    usual, dark = next((usual, dark) for end, usual, dark in HUES if hue_deg < end)
-    word = dark if lightness < DARK_WORD_BELOW else usual
     if chroma < TINTED_BELOW:
-        return f"{_step(lightness, GREY_LIGHTNESS)}{word}-grey"
-    return f"{_step(lightness, LIGHTNESS)}{word}"
+        return f"{_step(lightness, GREY_LIGHTNESS)}{_step(hue_deg, TINTS)} grey"
+    usual, dark = next((usual, dark) for end, usual, dark in HUES if hue_deg < end)
+    return f"{_step(lightness, LIGHTNESS)}{dark if lightness < DARK_WORD_BELOW else usual}"
 
 
 def _grey(lightness: float) -> str:
@@ -58,5 +59,5 @@ def _grey(lightness: float) -> str:
     return "white" if lightness > WHITE_ABOVE else f"{_step(lightness, GREY_LIGHTNESS)}grey"
 
 
-def _step(lightness: float, steps: tuple[tuple[float, str], ...]) -> str:
-    return next(word for end, word in steps if lightness < end)
+def _step(value: float, steps: tuple[tuple[float, str], ...]) -> str:
+    return next(word for end, word in steps if value < end)
