@@ -1,0 +1,24 @@
+"""``sheenmap``: the group of all commands."""
+
+from typing import Any
+
+import click
+
+from sheenmap import __version__
+from sheenmap.cli.map import map_command
+from sheenmap.cli.statuses import EPILOG
+
+
+@click.group(epilog=EPILOG, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 110})
+@click.version_option(__version__, prog_name="sheenmap", message="%(prog)s %(version)s")
+def program() -> None:
+    """Thickness maps of thin films from the interference colours of a photograph."""
+
+
+for _command in (map_command,):
+    program.add_command(_command)
+
+
+def main() -> Any:
+    """Run the command line. Never returns: it exits with the statuses of the contract."""
+    return program(prog_name="sheenmap")

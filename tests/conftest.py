@@ -1,0 +1,6 @@
+"""Lets tests import the makers of examples that stand in this folder."""
+
+import sys
+from pathlib import Path
+
+sys.path.insert(0, str(Path(__file__).parent))
