@@ -7,6 +7,7 @@ Conventions of this room: nm throughout; ``u`` is a standard uncertainty, ``u_lo
 from sheenmap.uniformity.area import PixelEvidence
 from sheenmap.uniformity.components import nested_components
 from sheenmap.uniformity.conformity import conformance
+from sheenmap.uniformity.die_statistics import statistics_by_die
 from sheenmap.uniformity.formulas import FORMULAS, nonuniformity, nonuniformity_estimate
 from sheenmap.uniformity.gauge import gauge_study
 from sheenmap.uniformity.judge import judge, tolerance_faults
@@ -37,5 +38,6 @@ __all__ = [
     "read_sites",
     "shape_of",
     "statistics",
+    "statistics_by_die",
     "tolerance_faults",
 ]

@@ -6,7 +6,7 @@ from numpy.typing import NDArray
 
 from sheenmap.arrays import BoolArray, FloatArray, read_only
 from sheenmap.wafer.coordinates import from_above
-from sheenmap.wafer.disc import find_disc
+from sheenmap.wafer.disc import find_disc, find_discs
 from sheenmap.wafer.faults import RegionError
 from sheenmap.wafer.region import Disc, Region
 from sheenmap.wafer.spec import Direction, RegionSpec
@@ -51,12 +51,24 @@ def locate(spec: RegionSpec, picture: NDArray[np.generic]) -> Region:
 
 
 def _disc_region(spec: RegionSpec, picture: NDArray[np.generic]) -> Region:
-    nominal_deg = DIRECTION_DEG[spec.notch]
-    disc = find_disc(picture, notch_near_deg=nominal_deg)
-    mm_per_px = _disc_scale(spec, disc, picture.shape[1])
-    pointing_deg = nominal_deg if disc.notch_deg is None else disc.notch_deg
+    return _about(find_disc(picture, notch_near_deg=DIRECTION_DEG[spec.notch]), spec, picture.shape[:2])
+
+
+def locate_each(spec: RegionSpec, picture: NDArray[np.generic]) -> tuple[Region, ...]:
+    """Regions of all discs of about the same size in a picture, by rows from the top and in a row from the left.
+
+    Parameters, Raises
+        As ``locate``, for the shape "disc".
+    """
+    discs = find_discs(picture, notch_near_deg=DIRECTION_DEG[spec.notch])
+    return tuple(_about(disc, spec, picture.shape[:2]) for disc in discs)
+
+
+def _about(disc: Disc, spec: RegionSpec, shape: tuple[int, ...]) -> Region:
+    mm_per_px = _disc_scale(spec, disc, shape[1])
+    pointing_deg = DIRECTION_DEG[spec.notch] if disc.notch_deg is None else disc.notch_deg
     return Region(
-        inside=_checked(disc_inside(disc, picture.shape[:2], _exclusion_px(spec, mm_per_px))),
+        inside=_checked(disc_inside(disc, shape, _exclusion_px(spec, mm_per_px))),
         origin_px=(disc.x_px, disc.y_px), mm_per_px=mm_per_px, disc=disc, rotation_deg=_rotation(pointing_deg),
         edge_exclusion_mm=spec.edge_exclusion_mm,
     )  # fmt: skip

@@ -36,25 +36,39 @@ class Scene:
 def draw(scene: Scene) -> np.ndarray:
     """The picture, (H, W, 3) float32 of linear signal."""
     rng = np.random.default_rng(scene.seed)
-    fine = 3  # samples a pixel and side
     height, width = scene.shape
-    y, x = np.mgrid[0 : height * fine, 0 : width * fine].astype(np.float32)
-    x, y = (x + 0.5) / fine - 0.5, (y + 0.5) / fine - 0.5
+    x, y = (plane.astype(np.float32) for plane in np.meshgrid(_fine(width), _fine(height)))
     on = _wafer(scene, x, y)
     for centre_x, centre_y, radius in scene.others:
         on |= np.hypot(x - centre_x, y - centre_y) <= radius
-    u, v = (x - scene.x) / scene.radius, (y - scene.y) / scene.radius
-    phase = 2.2 * (u * u + v * v) + rng.uniform(-1, 1) * u + rng.uniform(-1, 1) * v + rng.uniform(0, 6)
-    film = [level * (1 + scene.swing * np.sin(phase * factor)) for level, factor in zip(scene.film, (1.0, 1.25, 1.5))]
-    picture = np.where(on[..., None], np.stack(film, axis=-1), np.float32(scene.bench)).astype(np.float32)
-    _clips(scene, picture, u * scene.radius, v * scene.radius)
-    picture = cv2.resize(picture, (width, height), interpolation=cv2.INTER_AREA)
+    clip = _clips(scene, x - scene.x, y - scene.y)
+    film = _film(scene, rng)
+    picture = np.float32(scene.bench) + _averaged(on, scene.shape)[..., None] * (film - np.float32(scene.bench))
+    picture += _averaged(clip, scene.shape)[..., None] * (np.float32(scene.clip_level) - picture)
     _reflections(scene, picture, rng)
     away = np.hypot(np.arange(width) - width / 2, np.arange(height)[:, None] - height / 2) / np.hypot(width, height) * 2
     picture *= (1 - scene.vignette * away**2)[..., None].astype(np.float32)
     if scene.blur:
         picture = cv2.GaussianBlur(picture, (0, 0), scene.blur)
     return picture + rng.normal(0, scene.noise, picture.shape).astype(np.float32)
+
+
+def _fine(length):
+    """Three samples a pixel."""
+    return (np.arange(3 * length) + 0.5) / 3 - 0.5
+
+
+def _averaged(mask, shape):
+    return cv2.resize(mask.astype(np.float32), shape[::-1], interpolation=cv2.INTER_AREA)
+
+
+def _film(scene, rng):
+    """Interference-like colours that change over the wafer, in other phases for each channel."""
+    u = (np.arange(scene.shape[1], dtype=np.float32) - scene.x) / scene.radius
+    v = (np.arange(scene.shape[0], dtype=np.float32)[:, None] - scene.y) / scene.radius
+    phase = 2.2 * (u * u + v * v) + rng.uniform(-1, 1) * u + rng.uniform(-1, 1) * v + rng.uniform(0, 6)
+    levels = [level * (1 + scene.swing * np.sin(phase * factor)) for level, factor in zip(scene.film, (1.0, 1.25, 1.5))]
+    return np.stack(levels, axis=-1).astype(np.float32)
 
 
 def _wafer(scene, x, y):
@@ -74,12 +88,14 @@ def _turned(scene, x, y, angle_deg):
     return right * cosine + up * sine, up * cosine - right * sine
 
 
-def _clips(scene, picture, right, down):
+def _clips(scene, right, down):
+    """True on bars across the rim."""
+    clip = np.zeros(right.shape, bool)
     for angle_deg in scene.clips_deg:
         cosine, sine = np.cos(np.deg2rad(angle_deg)), np.sin(np.deg2rad(angle_deg))
         along, across = right * cosine - down * sine, right * sine + down * cosine
-        reach = (along > 0.95 * scene.radius) & (along < 1.1 * scene.radius)
-        picture[(np.abs(across) < 0.06 * scene.radius) & reach] = scene.clip_level
+        clip |= (np.abs(across) < 0.06 * scene.radius) & (along > 0.95 * scene.radius) & (along < 1.1 * scene.radius)
+    return clip
 
 
 def _reflections(scene, picture, rng):
