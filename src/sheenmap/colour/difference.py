@@ -31,7 +31,7 @@ def delta_e_2000(one: FloatArray, other: FloatArray) -> FloatArray:
     """
     lightness_1, chroma_1, hue_1 = _rescaled(one, other)
     lightness_2, chroma_2, hue_2 = _rescaled(other, one)
-    step, hue = _hue_step_and_mean(hue_1, hue_2, (chroma_1 == 0) | (chroma_2 == 0))
+    step, hue = _hue_step_and_mean(hue_1, hue_2)
     chroma = (chroma_1 + chroma_2) / 2
     d_hue = 2 * np.sqrt(chroma_1 * chroma_2) * np.sin(np.radians(step) / 2)
     weight_l, weight_c, weight_h = _weights((lightness_1 + lightness_2) / 2, chroma, hue)
@@ -52,14 +52,14 @@ def _saturating(chroma: FloatArray) -> FloatArray:
     return np.asarray(chroma**7 / (chroma**7 + 25.0**7))
 
 
-def _hue_step_and_mean(hue_1: FloatArray, hue_2: FloatArray, is_grey: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """h2 - h1 the short way round, and the mean hue; a grey has no hue and takes its partner's."""
+def _hue_step_and_mean(hue_1: FloatArray, hue_2: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """h2 - h1 the short way round, and the mean hue; with a grey, which has none, both come to nothing by its chroma of zero."""
     straight = hue_2 - hue_1
     total = hue_1 + hue_2
     is_short = np.abs(straight) <= 180 + HUE_TIE_DEG
     step = np.where(is_short, straight, straight - 360 * np.sign(straight))
     mean = np.where(is_short, total, np.where(total < 360, total + 360, total - 360)) / 2
-    return np.where(is_grey, 0.0, step), np.where(is_grey, total, mean)
+    return step, mean
 
 
 def _weights(lightness: FloatArray, chroma: FloatArray, hue_deg: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:

@@ -13,6 +13,7 @@ def test_a_label_without_room_is_left_out():
 
 def test_the_gap_is_kept():
     assert rows_without_overlap([(0, 10), (10.5, 20)], 2, 1) == [0, 1]
+    assert rows_without_overlap([(10.5, 20), (0, 10)], 2, 1) == [0, 1]
 
 
 def test_a_label_at_the_edge_is_pushed_inside():

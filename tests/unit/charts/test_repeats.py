@@ -55,3 +55,18 @@ def test_a_long_curve_is_compared_on_fewer_nodes_and_still_answers_for_each():
     look_alikes, _ = find_repeats(circle(2, count), thickness_nm, 2.0, apart_nm=100.0)
     assert len(look_alikes) == count
     assert look_alikes[801] == pytest.approx((thickness_nm[801] + thickness_nm[-1] / 2,), abs=2.0)
+
+
+def test_a_curve_that_trembles_in_place_never_repeats():
+    lab = np.array([50.0, 20.0, 20.0]) + np.random.default_rng(8).normal(0, 0.2, (200, 3))
+    _, repeats = find_repeats(lab, np.arange(200.0), 3.0, apart_nm=5.0)
+    assert repeats == ()
+
+
+def test_no_two_repeats_stand_beside_each_other():
+    lab = circle(2, 401) + np.random.default_rng(9).normal(0, 0.3, (401, 3))
+    _, repeats = find_repeats(lab, np.arange(401.0), 3.0, apart_nm=40.0)
+    assert len(repeats) > 2
+    ends = np.array([(repeat.one_nm, repeat.other_nm) for repeat in repeats])
+    distance = np.abs(ends[:, None] - ends[None]).max(axis=-1)
+    assert distance[~np.eye(len(ends), dtype=bool)].min() >= 40.0

@@ -32,7 +32,7 @@ def test_the_same_chart_makes_the_same_bytes(chart, tmp_path, suffix):
 
 
 def test_a_title_with_markup_and_formula_signs_is_drawn_as_it_stands(chart, tmp_path):
-    odd = replace(chart, setup=replace(chart.setup, title="$\\frac{ <b> & 100 % {x"))
+    odd = replace(chart, setup=replace(chart.setup, title="$\\frac{$ <b> & 100 % {x"))
     for suffix in BEGINS:
         write_chart(odd, tmp_path / f"chart{suffix}")
 
