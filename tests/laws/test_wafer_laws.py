@@ -67,6 +67,7 @@ def test_circle_fit_forgets_a_third_of_gross_errors(x, y, radius, share, seed):
     assert (fit.x_px, fit.y_px, fit.radius_px) == pytest.approx((x, y, radius), abs=1e-3 * radius)
 
 
+@settings(deadline=None)
 @given(
     rotation_deg=st.floats(-180, 180),
     s=st.floats(-0.05, 0.05),

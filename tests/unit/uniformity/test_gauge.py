@@ -20,8 +20,8 @@ def readings(seed=0, parts=10, operators=3, repeats=3, sd=(5.0, 1.0, 0.0, 0.5)):
 @pytest.mark.parametrize("interaction", [0.0, 1.5])
 def test_components_are_unbiased(interaction):
     """Mean of 300 studies' variances within four standard errors of the truth."""
-    found = [gauge_study(readings(seed, sd=(5.0, 1.0, interaction, 0.5))) for seed in range(300)]
-    for name, truth in (("repeatability_nm", 0.25), ("parts_nm", 25.0)):
+    found = [gauge_study(readings(seed, sd=(2.0, 1.0, interaction, 0.5))) for seed in range(300)]
+    for name, truth in (("repeatability_nm", 0.25), ("parts_nm", 4.0)):
         variances = np.square([getattr(gauge, name) for gauge in found])
         assert variances.mean() == pytest.approx(truth, abs=4 * variances.std() / np.sqrt(300) + 0.01 * truth)
     across = np.square([gauge.reproducibility_nm for gauge in found])

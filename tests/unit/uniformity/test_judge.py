@@ -1,5 +1,6 @@
 import numpy as np
 import pytest
+from scipy.special import ndtri
 
 from sheenmap.errors import SettingsError, UnknownNameError
 from sheenmap.flags import AMBIGUOUS, OFF_CURVE
@@ -65,6 +66,13 @@ def test_guard_band_follows_the_risk():
     assert verdict([site(1, value)], risk=0.01).outcome == "not decidable"
 
 
+def test_among_many_sites_one_a_little_outside_proves_nothing():
+    """2 u outside: 2.3 % to conform, proof against a single site, but among 49 at their limit one reads so by chance."""
+    assert verdict([site(1, 511.0)]).outcome == "failed"
+    assert verdict([site(i + 1, 500.0) for i in range(48)] + [site(49, 511.0)]).outcome == "not decidable"
+    assert verdict([site(i + 1, 500.0) for i in range(48)] + [site(49, 511.7)]).outcome == "failed"
+
+
 def test_unmeasured_site_keeps_a_part_from_passing():
     found = verdict([*GOOD, empty(3)])
     assert found.sentence == "Not decidable: 1 of 3 sites are not measured: 3."
@@ -122,6 +130,13 @@ def test_nonuniformity_near_its_limit_is_not_decided():
         for spread in (2.0, 5.0, 8.0)
     ]
     assert outcomes == ["passed", "not decidable", "failed"]
+
+
+def test_what_noise_adds_to_a_range_makes_no_part_fail():
+    """49 equal sites read with u = 1 nm spread over 4.6 nm, 0.46 %; half of that limit would fail them by their noise alone."""
+    read = 500 + ndtri((np.arange(49) + 0.5) / 49)
+    found = verdict([site(i + 1, value, u=1.0) for i, value in enumerate(read)], nonuniformity_percent=0.3).checks[1]
+    assert found.value == pytest.approx(0.46, abs=0.01) and found.outcome == "not decidable"
 
 
 def test_nonuniformity_over_some_of_the_sites_does_not_pass():

@@ -35,6 +35,12 @@ def test_bowl_and_tilt_are_recovered():
     assert shape.radius_mm == pytest.approx(100)
 
 
+def test_correlated_noise_makes_terms_less_certain():
+    thickness, sigma = 500 + 0 * X + 0 * Y, np.ones(FLAGS.shape)
+    one, four = (shape_of(thickness, sigma, FLAGS, region(), noise_correlation=c).terms[3].u_nm for c in (1.0, 4.0))
+    assert four == pytest.approx(2 * one)
+
+
 def test_saddle_of_each_direction_has_its_name():
     found, _ = terms(500 + 2 * (X**2 - Y**2) + 3 * (2 * X * Y))
     assert found["saddle 0"].value_nm == pytest.approx(2, abs=1e-6) and found["saddle 45"].value_nm == pytest.approx(3, abs=1e-6)

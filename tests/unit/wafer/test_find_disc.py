@@ -76,7 +76,7 @@ def test_textured_bench_does_not_pull_the_rim(drawn):
     picture = drawn.scene(scene)
     outside = np.hypot(np.arange(640) - scene.x, np.arange(480)[:, None] - scene.y) > scene.radius
     coarse = np.random.default_rng(0).normal(size=(160, 214))
-    texture = 0.1 * np.kron(coarse, np.ones((3, 3)))[:480, :640]
+    texture = 0.2 * np.kron(coarse, np.ones((3, 3)))[:480, :640]
     picture[outside] += texture[outside, None]
     assert np.abs(errors(find_disc(picture), scene)).max() < CENTRE_PX
 
@@ -113,6 +113,19 @@ def test_plain_rim_has_no_notch(drawn):
 
 def test_clip_is_no_notch(drawn):
     assert find_disc(drawn(clips_deg=(20.0, 140.0, -100.0), clip_level=0.3)).notch_deg is None
+
+
+def test_coloured_speck_on_the_rim_is_no_notch(drawn):
+    picture = drawn(swing=0.0)
+    cv2.circle(picture, (318, 52), 3, (0.02, 0.5, 0.02), -1)  # as dark as the bench in red and blue
+    assert find_disc(picture).notch_deg is None
+
+
+def test_grey_pin_at_the_rim_is_no_notch(drawn):
+    """As wide and deep as a notch and nearly as dark as the bench, but it sticks out over that."""
+    picture = drawn(swing=0.0).mean(axis=-1)
+    picture[40:59, 316:321] = 0.15
+    assert find_disc(picture).notch_deg is None
 
 
 def test_expected_place_decides_between_two_marks(drawn):
