@@ -47,9 +47,9 @@ def recipe(medium, layers, substrate, light, angle_deg, polarisation):
 
 
 def reflectance(stack, thickness_nm, wavelength_nm, angle_deg, polarisation):
-    """By tmm, whose indices are n + ik: ours, conjugated."""
+    """By tmm, whose indices are n + ik: ours, conjugated. Between samples they follow the optics room's monotone cubic."""
     media = [stack.medium, *(layer.index for layer in stack.layers), stack.substrate]
-    indices = np.conj(np.stack([sample(curve, wavelength_nm) for curve in media]))
+    indices = np.conj(np.stack([sample(curve, wavelength_nm, interpolation="monotone cubic") for curve in media]))
     thicknesses = [
         np.inf,
         *(thickness_nm if layer.thickness_nm is None else layer.thickness_nm for layer in stack.layers),

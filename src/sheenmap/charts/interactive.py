@@ -13,6 +13,7 @@ from sheenmap.charts.chart import Chart
 from sheenmap.charts.drawing import camera_strip
 from sheenmap.charts.orders import ORDER_WAVELENGTH_NM
 from sheenmap.charts.table import chart_record
+from sheenmap.charts.words import lit_words
 from sheenmap.colour import encode_srgb
 
 TEMPLATE = "page.html.j2"
@@ -25,6 +26,7 @@ def chart_html(chart: Chart) -> str:
     return environment.from_string(source).render(
         chart=chart,
         setup=chart.setup,
+        lit=lit_words(chart.exposure),
         order_wavelength_nm=f"{ORDER_WAVELENGTH_NM:g}",
         shown=strip_address(chart.shown),
         plain=strip_address(chart.srgb),

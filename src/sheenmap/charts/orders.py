@@ -15,7 +15,7 @@ def order_step_nm(stack: Stack, view: View) -> float:
         raise ValueError("no layer of the stack is searched")
     at_nm = np.array([ORDER_WAVELENGTH_NM])
     n = float(layer_index(stack.layers[stack.searched], at_nm).real[0])
-    sideways = float(sample(stack.medium, at_nm).real[0]) * np.sin(np.radians(view.angle_deg))
+    sideways = float(sample(stack.medium, at_nm, interpolation="monotone cubic").real[0]) * np.sin(np.radians(view.angle_deg))
     upright_squared = n**2 - sideways**2
     if upright_squared <= 0:
         return float("inf")  # total reflection: no wave travels in the film

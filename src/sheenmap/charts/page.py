@@ -22,6 +22,7 @@ from sheenmap.charts.drawing import (
 )
 from sheenmap.charts.orders import ORDER_WAVELENGTH_NM
 from sheenmap.charts.sheet import LEFT_IN, RIGHT_IN, Paper, Sheet, clipped, settled
+from sheenmap.charts.words import lit_words
 from sheenmap.colour import encode_srgb
 
 NAME_ROWS, REPEAT_ROWS = 4, 7
@@ -51,6 +52,7 @@ def _heading(sheet: Sheet, chart: Chart) -> None:
 
 def _strips(sheet: Sheet, chart: Chart) -> float:
     """Everything on the grey mount; returns where it ends."""
+    verb, amount = lit_words(chart.exposure).split(" ", 1)
     span_nm = edges(chart.thickness_nm)
     nm_per_inch = (span_nm[1] - span_nm[0]) / sheet.plot_width
     below = 4.16 + (0.26 if chart.appearance else 0.0)
@@ -61,7 +63,7 @@ def _strips(sheet: Sheet, chart: Chart) -> float:
     draw_names(sheet.axes(1.07, 0.6, span_nm), chart.runs, nm_per_inch, NAME_ROWS)
     wide = sheet.axes(1.70, 1.15, span_nm)
     draw_strip(wide, chart.thickness_nm, chart.shown)
-    sheet.label(2.27, f"as an adapted eye\nsees it, brightened\n{chart.exposure:.3g} times")
+    sheet.label(2.27, f"as an adapted eye\nsees it, {verb}\n{amount}")
     if not chart.shown_in_gamut.all():
         draw_gamut_marks(sheet.axes(2.85, 0.07, span_nm), chart.thickness_nm, chart.shown_in_gamut)
         sheet.label(2.885, "outside sRGB")
@@ -71,6 +73,8 @@ def _strips(sheet: Sheet, chart: Chart) -> float:
     draw_orders(sheet.axes(3.18, 0.22, span_nm), chart.orders, nm_per_inch)
     sheet.label(3.29, f"at {ORDER_WAVELENGTH_NM:g} nm")
     draw_strip(sheet.axes(3.48, 0.26, span_nm), chart.thickness_nm, chart.srgb)
+    if not chart.in_gamut.all():
+        draw_gamut_marks(sheet.axes(3.74, 0.04, span_nm), chart.thickness_nm, chart.in_gamut)
     sheet.label(3.61, "beside a mirror" if chart.setup.white == "light" else "beside the blank")
     draw_strip(sheet.axes(3.82, 0.26, span_nm), chart.thickness_nm, encode_srgb(camera_strip(chart.camera)))
     sheet.label(3.95, "camera's signal\nover its reference")

@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from sheenmap.charts.chart import Chart
 from sheenmap.charts.drawing import draw_gamut_marks, draw_names, draw_orders, draw_scale, draw_strip, edges
 from sheenmap.charts.sheet import Paper, Sheet, clipped, settled
-from sheenmap.charts.words import CAUTIONS
+from sheenmap.charts.words import CAUTIONS, lit_words
 from sheenmap.errors import Fault, SettingsError
 
 MOST_STRIPS = 8
@@ -35,7 +35,9 @@ def side_by_side_bytes(charts: Sequence[Chart], kind: str, *, paper: Paper = "a4
             _row(sheet, chart, TOP_IN + k * room / len(charts), room / len(charts), span_nm)
         draw_scale(sheet.axes(TOP_IN + room, 0.001, span_nm))
         sheet.label(TOP_IN + room + 0.1, "film, nm")
-        lines = textwrap.wrap("  ".join((*CAUTIONS, "Each strip is brightened as an eye adapts, by the factor beside it.")), 240)
+        lines = textwrap.wrap(
+            "  ".join((*CAUTIONS, "Each strip is brightened or dimmed as an eye adapts, by the factor beside it.")), 240
+        )
         sheet.write(0.3, sheet.height - 0.52, "\n".join(lines[:3]), size=6.3)
         return sheet.save(kind)
 
@@ -53,7 +55,7 @@ def _row(sheet: Sheet, chart: Chart, top: float, height: float, span_nm: tuple[f
     strip = sheet.axes(strip_top, strip_height, span_nm)
     draw_strip(strip, chart.thickness_nm, chart.shown)
     strip.set_xlim(*span_nm)
-    sheet.label(strip_top + strip_height / 2, f"brightened\n{chart.exposure:.3g} times")
+    sheet.label(strip_top + strip_height / 2, lit_words(chart.exposure).replace(" ", "\n", 1))
     if not chart.shown_in_gamut.all():
         draw_gamut_marks(sheet.axes(strip_top + strip_height - 0.05, 0.05, span_nm), chart.thickness_nm, chart.shown_in_gamut)
     draw_orders(sheet.axes(strip_top + strip_height, ORDERS_IN, span_nm), chart.orders, nm_per_inch)

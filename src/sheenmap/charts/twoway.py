@@ -13,7 +13,7 @@ from sheenmap.charts.chart import Setup
 from sheenmap.charts.drawing import draw_scale, edges
 from sheenmap.charts.sheet import INK, Paper, Sheet, clipped, settled
 from sheenmap.charts.sight import exposure_for, look, thicknesses, view_of
-from sheenmap.charts.words import CAUTIONS, describe
+from sheenmap.charts.words import CAUTIONS, describe, lit_words
 from sheenmap.colour import srgb
 from sheenmap.errors import Fault, SettingsError
 from sheenmap.optics import Stack, View
@@ -94,7 +94,7 @@ def two_way_bytes(chart: TwoWay, kind: str, *, paper: Paper = "a4") -> bytes:
         )
         _picture(sheet, chart)
         lines = textwrap.wrap(
-            "  ".join((*CAUTIONS, f"Brightened {chart.exposure:.3g} times, as an eye adapts. {_gamut_words(chart)}")), 240
+            "  ".join((*CAUTIONS, f"The colours are {lit_words(chart.exposure)}, as an eye adapts. {_gamut_words(chart)}")), 240
         )
         sheet.write(0.3, sheet.height - 0.52, "\n".join(lines[:3]), size=6.3)
         return sheet.save(kind)

@@ -46,8 +46,8 @@ def notes_for(shot: Shot, setup: Setup, *, thickness_nm: FloatArray, exposure: f
     low, high = setup.band_nm
     against, beside = ("the perfect mirror", "a mirror") if setup.white == "light" else ("the blank", "the blank")
     lines = [
-        f"The wide strip is brightened {exposure:.3g} times, as an eye adapts (brightest film at Y = 80); names are for it. "
-        f'XYZ, Lab and the strip "beside {beside}" are against {against} under the light.',
+        f"The wide strip is {lit_words(exposure)}, as an eye adapts (brightest film at Y = 80); names are for it. "
+        f'Lab and the strip "beside {beside}" are against {against} under the light; XYZ have the perfect mirror at Y = 100.',
         f"Summed at 1 nm from {low:g} to {high:g} nm.",
     ]
     if exposure > DARK_EXPOSURE:
@@ -63,6 +63,11 @@ def notes_for(shot: Shot, setup: Setup, *, thickness_nm: FloatArray, exposure: f
     if thickness_nm.size > MOST_NODES:
         lines.append("Look-alikes are found on a coarser grid than the table's.")
     return tuple(lines)
+
+
+def lit_words(exposure: float) -> str:
+    """How a strip is made brighter or darker than it is."""
+    return f"brightened {exposure:.3g} times" if exposure >= 1 else f"dimmed to {exposure:.3g} of its light"
 
 
 def _stack_words(stack: Stack, search_nm: tuple[float, float]) -> str:
