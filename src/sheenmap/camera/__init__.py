@@ -2,9 +2,9 @@
 
 from sheenmap.camera.encoding import Encoding, code_step, decode, encode, parse_encoding_name
 from sheenmap.camera.noise import Noise, Rounding, estimate_noise, stated_noise
-from sheenmap.camera.signal import Frame, Signal, linear_frame, relative_signal
+from sheenmap.camera.signal import Frame, Signal, linear_codes, linear_frame, relative_signal
 
 __all__ = [
     "Encoding", "Frame", "Noise", "Rounding", "Signal",
-    "code_step", "decode", "encode", "estimate_noise", "linear_frame", "parse_encoding_name", "relative_signal", "stated_noise",
+    "code_step", "decode", "encode", "estimate_noise", "linear_codes", "linear_frame", "parse_encoding_name", "relative_signal", "stated_noise",
 ]  # fmt: skip

@@ -64,15 +64,19 @@ def linear_frame(
     ``codes`` may be a mean of ``frames`` pictures (then float). A value at full scale in any channel is clipped.
     """
     clipped = np.any(codes >= full_scale, axis=-1) if codes.dtype.kind != "f" or full_scale > 1 else np.any(codes > full_scale, axis=-1)
-    if codes.dtype.kind == "u":
-        every = decode(encoding, np.arange(full_scale + 1), full_scale).astype(np.float32)
-        values = every[codes]
-    else:
-        values = decode(encoding, codes.astype(np.float64), full_scale).astype(np.float32)
+    values = linear_codes(codes, encoding, full_scale)
     rounding = Rounding(encoding=encoding, full_scale=full_scale) if full_scale > 1 else None
     if noise is None:
         noise = estimate_noise(values, usable=~clipped, rounding=rounding)
     return Frame(values=values, clipped=clipped, noise=noise, frames=frames)
+
+
+def linear_codes(codes: NDArray[np.generic], encoding: Encoding, full_scale: float) -> Floats:
+    """Codes (H, W, 3) made linear, full scale 1."""
+    if codes.dtype.kind == "u":
+        every = decode(encoding, np.arange(full_scale + 1), full_scale).astype(np.float32)
+        return np.asarray(every[codes])
+    return decode(encoding, codes.astype(np.float64), full_scale).astype(np.float32)
 
 
 def relative_signal(photo: Frame, blank: Frame, dark: Floats | None) -> Signal:

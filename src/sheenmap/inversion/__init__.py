@@ -3,7 +3,10 @@
 Pictures are (H, W), blocks (h, w); chi-square is -2 ln of the likelihood; thickness and its uncertainty are in nm.
 """
 
+from sheenmap.inversion.candidates import Candidates
+from sheenmap.inversion.candidates import find_candidates as pixel_candidates
 from sheenmap.inversion.invert import Inversion, invert
 from sheenmap.inversion.likelihood import Doubts
+from sheenmap.inversion.listing import list_candidates
 
-__all__ = ["Doubts", "Inversion", "invert"]
+__all__ = ["Candidates", "Doubts", "Inversion", "invert", "list_candidates", "pixel_candidates"]

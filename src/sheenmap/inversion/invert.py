@@ -1,7 +1,8 @@
 """From the signal to thickness, standard uncertainty and flags: the inverse's own story."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
+import cv2
 import numpy as np
 from numpy.typing import NDArray
 
@@ -17,10 +18,13 @@ from sheenmap.inversion.reference import Planes, fit_planes
 from sheenmap.inversion.regions import DECIDED_GAP
 from sheenmap.inversion.residuals import with_residual_noise
 from sheenmap.inversion.settle import Settled, settle
+from sheenmap.inversion.shading import estimate_shading
 from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE, split_strays
 from sheenmap.lookup import Table
 
 WEAK_SIGMA_NM = 5.0
+MUCH_MORE_SHADING = 1.3
+STEP_REACH = 4  # pixels
 DARKEST_SHARE = 0.3  # of the darkest colour that the table holds; a mirror that shows no light is this dark
 FEWEST_RESIDUALS, MOST_RESIDUALS = 500, 30_000
 
@@ -31,6 +35,7 @@ class Inversion:
 
     ``thickness_nm`` and ``sigma_nm`` are NaN where no value was formed; whether it is claimed is for ``flags`` to say.
     ``chi_square`` is that of the best fit; ``block`` the block that led a pixel; ``settled`` what the blocks hold.
+    ``signal`` and ``doubts`` are the ones that were used in the end: with the noise and the shading that the picture showed.
     """
 
     thickness_nm: FloatArray
@@ -39,12 +44,18 @@ class Inversion:
     flags: FlagArray
     block: NDArray[np.intp]
     settled: Settled
+    signal: Signal
+    doubts: Doubts
 
 
 def invert(
-    signal: Signal, table: Table, inside: BoolArray, *, angle_deg: NDArray[np.floating] | None = None, doubts: Doubts
-) -> Inversion:
-    """Thickness of every pixel ``inside`` (H, W), as far as its light and its surroundings tell."""
+    signal: Signal, table: Table, inside: BoolArray, *,
+    angle_deg: NDArray[np.floating] | None = None, doubts: Doubts, shading_is_known: bool = False,
+) -> Inversion:  # fmt: skip
+    """Thickness of every pixel ``inside`` (H, W), as far as its light and its surroundings tell.
+
+    The shading of ``doubts`` is a first guess that the picture's own replaces, unless ``shading_is_known``.
+    """
     flags = signal.flags.copy()
     flags[~inside] = np.uint16(OUTSIDE.mask)
     flags[inside & _is_black(signal, table)] |= np.uint16(DARK.mask)
@@ -53,16 +64,23 @@ def invert(
     if signal.spread > 1:
         signal = _with_shared_noise(signal, usable, angle_deg, table, planes, doubts)
         settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
+    if not shading_is_known:
+        shading_u = estimate_shading(settled.thickness_nm, settled.sure, settled.evidence, table) or doubts.shading_u
+        is_worse = shading_u > MUCH_MORE_SHADING * doubts.shading_u
+        doubts = replace(doubts, shading_u=shading_u)
+        if is_worse:
+            settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     local = fit_locally(signal, usable, angle_deg, table, planes, doubts)
     thickness_nm, sigma_nm, chi_square = local.thickness_nm, local.sigma_nm, local.chi_square
     stray = usable & ~(chi_square <= OFF_CURVE_CHI_SQUARE)
     elsewhere = _fit_elsewhere(signal, np.flatnonzero(stray), angle_deg, table, doubts)
-    _flag_strays(flags, stray, elsewhere, thickness_nm, sigma_nm, chi_square)
+    _flag_strays(flags, stray, elsewhere, _steps(local.block, settled), thickness_nm, sigma_nm, chi_square)
     _flag_order(flags, local, settled, stray)
     _flag_values(flags, thickness_nm, sigma_nm, table)
     return Inversion(
-        thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block, settled=settled
-    )
+        thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block,
+        settled=settled, signal=signal, doubts=doubts,
+    )  # fmt: skip
 
 
 def _settled_planes(
@@ -117,13 +135,26 @@ def _fit_elsewhere(
     )
 
 
+def _steps(block: NDArray[np.intp], settled: Settled) -> BoolArray:
+    """Where pixels (H, W) led by blocks of different regions lie within ``STEP_REACH`` of each other."""
+    regions = np.unique(settled.region)
+    number = np.searchsorted(regions, settled.region.ravel()).astype(np.float32)
+    led = block >= 0
+    kernel = np.ones((2 * STEP_REACH + 1, 2 * STEP_REACH + 1), np.uint8)
+    own = number[np.maximum(block, 0)]
+    highest = cv2.dilate(np.where(led, own, -1).astype(np.float32), kernel)
+    lowest = cv2.erode(np.where(led, own, np.float32(1e9)).astype(np.float32), kernel)
+    return np.asarray(highest > lowest)
+
+
 def _flag_strays(
-    flags: FlagArray, stray: BoolArray, elsewhere: _Elsewhere, thickness_nm: FloatArray, sigma_nm: FloatArray, chi_square: FloatArray
-) -> None:
+    flags: FlagArray, stray: BoolArray, elsewhere: _Elsewhere, at_step: BoolArray,
+    thickness_nm: FloatArray, sigma_nm: FloatArray, chi_square: FloatArray,
+) -> None:  # fmt: skip
     on_curve = np.zeros(stray.shape, bool)
     on_curve.flat[elsewhere.rows] = elsewhere.chi_square <= OFF_CURVE_CHI_SQUARE
     severity = np.where(stray, np.where(np.isfinite(chi_square), chi_square, 1e9), 0.0)
-    defect, film = split_strays(stray, on_curve, severity)
+    defect, film = split_strays(stray, on_curve, severity, at_step)
     flags[(defect | (stray & ~film)) & ((flags & np.uint16(OUTSIDE.mask)) == 0)] |= np.uint16(OFF_CURVE.mask)
     moved = film.flat[elsewhere.rows]
     rows = elsewhere.rows[moved]

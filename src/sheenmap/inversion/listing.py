@@ -4,9 +4,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sheenmap.arrays import FloatArray
-from sheenmap.camera import Signal
 from sheenmap.inversion.invert import Inversion
-from sheenmap.inversion.likelihood import Doubts
 from sheenmap.inversion.local import pixels_at
 from sheenmap.inversion.posterior import posterior_near
 from sheenmap.lookup import Table
@@ -17,7 +15,7 @@ SEARCH_NM = 8.0
 
 
 def list_candidates(
-    signal: Signal, table: Table, inversion: Inversion, angle_deg: NDArray[np.floating] | None, doubts: Doubts
+    table: Table, inversion: Inversion, angle_deg: NDArray[np.floating] | None
 ) -> tuple[NDArray[np.float32], NDArray[np.float32]]:
     """Other thicknesses (K, H, W) that fit each pixel that was led by a block, best first, and their odds against the best.
 
@@ -28,13 +26,13 @@ def list_candidates(
     rows = np.flatnonzero(inversion.block >= 0)
     block = inversion.block.ravel()[rows]
     chosen_nm = inversion.settled.thickness_nm.ravel()[block]
-    pixels = pixels_at(signal, angle_deg, rows)
+    pixels = pixels_at(inversion.signal, angle_deg, rows)
     gaps = np.full((rows.size, inversion.settled.rivals_nm.shape[-1]), np.inf)
     found = np.full(gaps.shape, np.nan)
     for k in range(gaps.shape[1]):
         rival_nm = inversion.settled.rivals_nm.reshape(-1, gaps.shape[1])[block, k]
         other = np.flatnonzero(np.abs(rival_nm - chosen_nm) > 2 * inversion.settled.link_nm)
-        fit = posterior_near(pixels.part(other), table, rival_nm[other], np.full(other.size, SEARCH_NM), doubts)
+        fit = posterior_near(pixels.part(other), table, rival_nm[other], np.full(other.size, SEARCH_NM), inversion.doubts)
         found[other, k] = fit.thickness_nm
         gaps[other, k] = fit.chi_square - inversion.chi_square.ravel()[rows[other]]
     _keep_best(places, odds, rows, found, gaps)

@@ -18,6 +18,7 @@ from sheenmap.lookup import Table, evaluate
 
 ROUNDS = 12
 TRIMMED = 0.99  # of the pixels, those with the least residual; the rest may be dirt
+MEDIAN_CHI_SQUARE = 1.386  # of two degrees of freedom
 TRIMMED_MEAN = 0.953  # mean of a chi-square variable of two degrees of freedom over its lowest 99 %, relative to its mean of 2
 
 
@@ -26,7 +27,7 @@ def with_residual_noise(signal: Signal, pixels: Pixels, thickness_nm: FloatArray
     expected, slope = evaluate(table, thickness_nm, pixels.angle_deg)
     sd = np.sqrt(pixels.variance)
     residual, along = (pixels.signal - expected) / sd, slope / sd
-    matrix = signal.correlation.copy()
+    matrix = signal.correlation * _scale(signal.correlation, residual, along)
     for _ in range(ROUNDS):
         matrix = _updated(matrix, residual, along)
     scale = np.sqrt(np.diag(matrix))
@@ -40,12 +41,27 @@ def with_residual_noise(signal: Signal, pixels: Pixels, thickness_nm: FloatArray
     )
 
 
-def _updated(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> FloatArray:
+def _scale(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> float:
+    """A first scale of the whole covariance.
+
+    The direction in which thickness moves the signal is seen by neighbours' differences alone, which see too little, and
+    the others by the residuals, which see all of what a JPEG does to them. The unseen direction gets the geometric mean.
+    """
+    _, chi_square, _ = _left_over(matrix, residual, along)
+    return float(np.sqrt(np.median(chi_square) / MEDIAN_CHI_SQUARE))
+
+
+def _left_over(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Residuals (N, 3) with the thickness free, their chi-square (N,), and the information on thickness (N,)."""
     precision = np.linalg.inv(matrix)
     weighted = along @ precision
     information = np.maximum(np.einsum("ni,ni->n", weighted, along), 1e-12)
     left = residual - along * (np.einsum("ni,ni->n", weighted, residual) / information)[:, None]
-    chi_square = np.einsum("ni,ij,nj->n", left, precision, left)
+    return left, np.einsum("ni,ij,nj->n", left, precision, left), information
+
+
+def _updated(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> FloatArray:
+    left, chi_square, information = _left_over(matrix, residual, along)
     kept: NDArray[np.bool_] = chi_square <= np.quantile(chi_square, TRIMMED)
     taken = np.einsum("n,ni,nj->ij", 1 / information[kept], along[kept], along[kept])
     seen = np.einsum("ni,nj->ij", left[kept], left[kept]) / TRIMMED_MEAN

@@ -56,6 +56,12 @@ class Settled:
     rivals_nm: FloatArray
     rival_gap: FloatArray
     link_nm: float
+    evidence: Evidence
+
+    @property
+    def sure(self) -> BoolArray:
+        """Blocks (h, w) whose order is decided."""
+        return np.asarray((self.region >= 0) & (self.gap >= DECIDED_GAP))
 
 
 def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, table: Table, doubts: Doubts) -> Settled:
@@ -69,7 +75,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     single = _candidates(blocks, even, pixel_variance, correlation, table, doubts)
     rivals_nm, rival_cost = _gridded(single, even, known)
     if not known.any():
-        return _nothing(shape)
+        return _nothing(shape, _evidence(blocks, correlation))
     nearest = tuple(distance_transform_edt(~known, return_distances=False, return_indices=True))
     width_nm = link_width_nm(np.where(known[..., None], places, np.nan))
     thickness_nm = _ordered(filled(places, known, nearest), _without_data(costs, known, nearest), width_nm)
@@ -86,6 +92,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
         rivals_nm=rivals_nm,
         rival_gap=_over_best(rival_cost),
         link_nm=width_nm,
+        evidence=evidence,
     )
 
 
@@ -247,9 +254,9 @@ def _over_best(cost: FloatArray) -> FloatArray:
     return np.where(np.isfinite(cost), cost - np.where(np.isfinite(best), best, 0.0), np.inf)
 
 
-def _nothing(shape: tuple[int, int]) -> Settled:
+def _nothing(shape: tuple[int, int], evidence: Evidence) -> Settled:
     nan, none = np.full(shape, np.nan), np.full((*shape, 1), np.nan)
     return Settled(
         thickness_nm=nan, sigma_nm=nan, region=np.full(shape, -1), gap=np.zeros(shape), alone=np.zeros(shape, bool),
-        others_nm=none, rivals_nm=none, rival_gap=none, link_nm=0.0,
+        others_nm=none, rivals_nm=none, rival_gap=none, link_nm=0.0, evidence=evidence,
     )  # fmt: skip

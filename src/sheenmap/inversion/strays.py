@@ -19,7 +19,9 @@ LONGEST_SPECK = 10  # pixels; smaller objects that stand out of the film are spe
 MOSTLY_ON_CURVE = 0.7
 
 
-def split_strays(stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray) -> tuple[BoolArray, BoolArray]:
+def split_strays(
+    stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray, at_step: BoolArray
+) -> tuple[BoolArray, BoolArray]:
     """Defects and film among the pixels (H, W) that do not continue their surroundings.
 
     Parameters
@@ -30,6 +32,8 @@ def split_strays(stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray) 
         Those that some other thickness explains.
     chi_square : (H, W) float
         Of the best explanation.
+    at_step : (H, W) bool
+        Where film of one region meets another: strays there mix the light of both, and need no margin.
 
     Returns
     -------
@@ -45,7 +49,8 @@ def split_strays(stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray) 
     film = (extent >= LONGEST_SPECK) & (share_on >= MOSTLY_ON_CURVE)
     defect = ~film & ((area >= SMALLEST_DEFECT) | (worst >= SURELY_OFF_CHI_SQUARE))
     film[0] = defect[0] = False
-    return _grown(defect[label]), film[label] & on_curve
+    found = defect[label]
+    return found | _grown(found & ~at_step), film[label] & on_curve
 
 
 def _sums(label: NDArray[np.int32], mask: BoolArray, count: int) -> FloatArray:
@@ -53,6 +58,6 @@ def _sums(label: NDArray[np.int32], mask: BoolArray, count: int) -> FloatArray:
 
 
 def _grown(defect: BoolArray) -> BoolArray:
-    """Defects with holes closed and ``MARGIN`` pixels around."""
+    """Defects with ``MARGIN`` pixels around."""
     kernel = cv2.getStructuringElement(cv2.MORPH_ELLIPSE, (2 * MARGIN + 1, 2 * MARGIN + 1))
     return np.asarray(cv2.dilate(defect.astype(np.uint8), kernel), dtype=bool)

@@ -41,6 +41,8 @@ class Measurement:
         Standard uncertainty that all pixels share, at the median thickness.
     sentence : str
         What the map amounts to, in one line; the reason when nothing can be claimed.
+    is_measured : bool
+        False when so little is claimed that there is no map to speak of.
     notes : tuple of str
         Hints and findings about the set-up, each with its evidence.
     history : tuple of str
@@ -59,6 +61,7 @@ class Measurement:
     region: Region
     statistics: Statistics
     sentence: str
+    is_measured: bool = True
     candidates_nm: NDArray[np.float32] | None = None
     candidate_odds: NDArray[np.float32] | None = None
     sites: tuple[SiteReading, ...] = ()

@@ -33,7 +33,7 @@ class CameraSetup:
     ``response`` holds (3, W) sensitivities per watt in the order red, green, blue. ``blank_surface`` is a stack without a
     searched layer, or a reflectance curve. ``blank_frames`` and ``dark_frames`` are averaged. ``level_u`` is the relative
     standard uncertainty of the exposure of the photograph against the blank's; ``colour_u`` that of each channel's colour
-    (lamp, response) beyond it; ``shading_u`` the shading left after the blank, None: estimated from the picture.
+    (lamp, response) beyond it, None: a usual one is assumed; ``shading_u`` the shading left after the blank, None: estimated from the picture.
     """
 
     response: Spectrum
@@ -44,7 +44,7 @@ class CameraSetup:
     blank_surface: Stack | Spectrum | None = None
     noise: NoiseSpec = NoiseSpec()
     level_u: float = 0.0
-    colour_u: float = 0.0
+    colour_u: float | None = None
     shading_u: float | None = None
 
 

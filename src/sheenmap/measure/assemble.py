@@ -1,0 +1,113 @@
+"""From arrays to a measurement: statistics, sites, verdict, budget, and the words that go with them."""
+
+import numpy as np
+from numpy.typing import NDArray
+
+from sheenmap import __version__
+from sheenmap.flags import OUTSIDE, FlagArray, has, is_blocked
+from sheenmap.inversion import Doubts, Inversion
+from sheenmap.lookup import Table
+from sheenmap.measure.budget import budget, common_u_nm
+from sheenmap.measure.frames import Frames
+from sheenmap.measure.notes import headline, notes
+from sheenmap.measure.preview import preview
+from sheenmap.measure.result import BudgetLine, Measurement
+from sheenmap.recipe import Recipe
+from sheenmap.uniformity import FORMULAS, PixelEvidence, SiteReading, Statistics, Verdict, judge, nonuniformity, read_sites, statistics
+from sheenmap.wafer import Region, site_positions
+
+LEAST_CLAIMED = 0.01  # of the region; less is no map
+Listed = tuple[NDArray[np.float32], NDArray[np.float32]]
+
+
+def assemble(
+    recipe: Recipe, frames: Frames, region: Region, angle_deg: NDArray[np.float32] | None, table: Table,
+    inversion: Inversion, listed: Listed | None,
+) -> Measurement:  # fmt: skip
+    """The measurement that the arrays amount to."""
+    signal, doubts = inversion.signal, inversion.doubts
+    flags, sigma_nm = inversion.flags, inversion.sigma_nm
+    thickness_nm = np.where(is_blocked(flags), np.nan, inversion.thickness_nm).astype(np.float32)
+    sigma_nm = np.where(has(flags, OUTSIDE), np.nan, sigma_nm).astype(np.float32)
+    lines = _budget(recipe, table, doubts, thickness_nm, sigma_nm, angle_deg)
+    u_common_nm = common_u_nm(lines)
+    numbers = statistics(thickness_nm, sigma_nm, flags, region.inside, u_common_nm, noise_correlation=signal.spread)
+    is_measured = numbers.claimed >= LEAST_CLAIMED * max(numbers.pixels, 1)
+    readings = _sites(recipe, region, thickness_nm, sigma_nm, flags, u_common_nm, signal.spread)
+    image, scale = preview(frames)
+    return Measurement(
+        title=recipe.title,
+        thickness_nm=thickness_nm,
+        sigma_nm=sigma_nm,
+        flags=flags,
+        residual=(inversion.chi_square / 2).astype(np.float32),
+        preview=image,
+        preview_scale=scale,
+        region=region,
+        statistics=numbers,
+        sentence=headline(numbers, u_common_nm, flags, region, is_measured=is_measured),
+        is_measured=is_measured,
+        candidates_nm=None if listed is None else listed[0],
+        candidate_odds=None if listed is None else listed[1],
+        sites=readings,
+        nonuniformity_percent=_formulas(readings, recipe),
+        verdict=_verdict(recipe, readings, numbers, u_common_nm, thickness_nm, sigma_nm, flags, region) if is_measured else None,
+        budget=lines,
+        u_common_nm=u_common_nm,
+        notes=notes(recipe, frames, table, inversion),
+        history=(
+            *signal.history, f"shading left after the blank: {100 * doubts.shading_u:.2f} % rms",
+            f"table of {table.thickness_nm.size} thicknesses, wavelengths {table.wavelength_step_nm:g} nm apart"),
+        provenance=_provenance(recipe, frames, doubts),
+    )
+
+
+def _budget(
+    recipe: Recipe, table: Table, doubts: Doubts, thickness_nm: NDArray[np.float32], sigma_nm: NDArray[np.float32],
+    angle_deg: NDArray[np.float32] | None,
+) -> tuple[BudgetLine, ...]:  # fmt: skip
+    claimed = np.isfinite(thickness_nm)
+    if not claimed.any():
+        return ()
+    angle = recipe.shots[0].view.angle_deg.value if angle_deg is None else float(np.median(angle_deg[claimed]))
+    middle_nm, own_nm = float(np.median(thickness_nm[claimed])), float(np.median(sigma_nm[claimed]))
+    return budget(recipe, table, doubts, thickness_nm=middle_nm, angle_deg=angle, sigma_nm=own_nm)
+
+
+def _sites(
+    recipe: Recipe, region: Region, thickness_nm: NDArray[np.float32], sigma_nm: NDArray[np.float32], flags: FlagArray,
+    u_common_nm: float, spread: float,
+) -> tuple[SiteReading, ...]:  # fmt: skip
+    if recipe.sites is None:
+        return ()
+    places = site_positions(recipe.sites, region)
+    return read_sites(thickness_nm, sigma_nm, flags, places, u_common_nm, noise_correlation=spread)
+
+
+def _formulas(readings: tuple[SiteReading, ...], recipe: Recipe) -> dict[str, float | None]:
+    values = [reading.thickness_nm for reading in readings if reading.thickness_nm is not None]
+    target_nm = None if recipe.tolerance is None else recipe.tolerance.target_nm
+    return {name: nonuniformity(values, name, target_nm=target_nm) for name in FORMULAS} if len(values) > 1 else {}
+
+
+def _verdict(
+    recipe: Recipe, readings: tuple[SiteReading, ...], numbers: Statistics, u_common_nm: float, thickness_nm: NDArray[np.float32],
+    sigma_nm: NDArray[np.float32], flags: FlagArray, region: Region,
+) -> Verdict | None:  # fmt: skip
+    if recipe.tolerance is None:
+        return None
+    pixels = PixelEvidence(thickness_nm=thickness_nm, sigma_nm=sigma_nm, flags=flags, inside=region.inside)
+    return judge(recipe.tolerance, readings, numbers, u_common_nm=u_common_nm, pixels=pixels)
+
+
+def _provenance(recipe: Recipe, frames: Frames, doubts: Doubts) -> dict[str, object]:
+    return {
+        "sheenmap": __version__,
+        "recipe": recipe.path.name,
+        "recipe_sha256": recipe.digest,
+        "recipe_text": recipe.text,
+        "pictures_sha256": frames.digests,
+        "shading_u": doubts.shading_u,
+        "level_u": doubts.level_u,
+        "colour_u": doubts.colour_u,
+    }
