@@ -25,35 +25,59 @@ class Flag:
 
 
 OUTSIDE = Flag(
-    bit=0, name="outside", blocks=True, meaning="outside the region that the recipe asks for",
+    bit=0,
+    name="outside",
+    blocks=True,
+    meaning="outside the region that the recipe asks for",
     advice="Nothing to do; change [region] if the part is cut off.",
 )
 SATURATED = Flag(
-    bit=1, name="saturated", blocks=True, meaning="a channel stands at full scale, in the photograph or in the blank",
+    bit=1,
+    name="saturated",
+    blocks=True,
+    meaning="a channel stands at full scale, in the photograph or in the blank",
     advice="Expose less, so that the brightest part of interest stands at 70 to 85 % of full scale.",
 )
 DARK = Flag(
-    bit=2, name="dark", blocks=True, meaning="too little light above the dark frame to tell a colour",
+    bit=2,
+    name="dark",
+    blocks=True,
+    meaning="too little light above the dark frame to tell a colour",
     advice="Expose longer, or put an even light where the part mirrors it into the lens.",
 )
 OFF_CURVE = Flag(
-    bit=3, name="off-curve", blocks=True, meaning="no thickness makes this colour: dirt, metal, damage or a wrong set-up",
+    bit=3,
+    name="off-curve",
+    blocks=True,
+    meaning="no thickness makes this colour: dirt, metal, damage or a wrong set-up",
     advice="Look at the part there; where much is off the curve, check material, lamp, encoding and blank.",
 )
 AMBIGUOUS = Flag(
-    bit=4, name="ambiguous", blocks=True, meaning="two thicknesses or more fit and nothing decides between them",
+    bit=4,
+    name="ambiguous",
+    blocks=True,
+    meaning="two thicknesses or more fit and nothing decides between them",
     advice="Narrow search_nm if you may, or add a second shot with another lamp, a filter or a tilt.",
 )
 AT_LIMIT = Flag(
-    bit=5, name="at-limit", blocks=True, meaning="the best fit stands on an end of the search range that is not zero",
+    bit=5,
+    name="at-limit",
+    blocks=True,
+    meaning="the best fit stands on an end of the search range that is not zero",
     advice="Widen search_nm.",
 )
 BY_CONTINUITY = Flag(
-    bit=6, name="by-continuity", blocks=False, meaning="the order was settled by the neighbours, not by this pixel alone",
+    bit=6,
+    name="by-continuity",
+    blocks=False,
+    meaning="the order was settled by the neighbours, not by this pixel alone",
     advice="Nothing to do; a second shot would settle it without the neighbours.",
 )
 WEAK = Flag(
-    bit=7, name="weak", blocks=False, meaning="colour hardly changes with thickness here, so that the uncertainty is large",
+    bit=7,
+    name="weak",
+    blocks=False,
+    meaning="colour hardly changes with thickness here, so that the uncertainty is large",
     advice="Average over a site, or add a shot under another lamp or angle.",
 )
 

@@ -5,6 +5,18 @@ from sheenmap.camera.noise import Noise, Rounding, estimate_noise, stated_noise
 from sheenmap.camera.signal import Frame, Signal, linear_codes, linear_frame, relative_signal
 
 __all__ = [
-    "Encoding", "Frame", "Noise", "Rounding", "Signal",
-    "code_step", "decode", "encode", "estimate_noise", "linear_codes", "linear_frame", "parse_encoding_name", "relative_signal", "stated_noise",
-]  # fmt: skip
+    "Encoding",
+    "Frame",
+    "Noise",
+    "Rounding",
+    "Signal",
+    "code_step",
+    "decode",
+    "encode",
+    "estimate_noise",
+    "linear_codes",
+    "linear_frame",
+    "parse_encoding_name",
+    "relative_signal",
+    "stated_noise",
+]

@@ -29,8 +29,10 @@ class Encoding:
 
 def parse_encoding_name(text: str) -> Encoding | None:
     """The encoding that a recipe names ("linear", "srgb", "power 2.2"), or None when the text is no such name."""
-    if text in ("linear", "srgb"):
-        return Encoding(kind=text)
+    if text == "linear":
+        return Encoding(kind="linear")
+    if text == "srgb":
+        return Encoding(kind="srgb")
     match = re.fullmatch(r"power\s+([0-9]+(?:\.[0-9]+)?)", text)
     if match and 0.2 <= float(match[1]) <= 5:
         return Encoding(kind="power", gamma=float(match[1]))

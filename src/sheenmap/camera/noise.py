@@ -112,19 +112,20 @@ class _Tiles:
 
 
 def _tiles(linear: NDArray[np.floating], spacing: int, usable: NDArray[np.bool_] | None) -> _Tiles | None:
-    sums, counts, level = 0.0, 0.0, 0.0
     height, width = linear.shape[:2]
     if min(height, width) < 4 * spacing + TILE:
         return None
+    rows, columns = ((side - 4 * spacing) // TILE for side in (height, width))
+    sums, counts, level = (np.zeros((rows, columns, depth)) for depth in (9, 1, 3))
     for axis in (0, 1):
         difference = _fourth_difference(linear, spacing, axis)
         trimmed = _trimmed(linear, spacing, axis)
         good = np.ones(difference.shape[:2]) if usable is None else _all_usable(usable, spacing, axis).astype(float)
         pairs = np.stack([difference[..., i] * difference[..., j] for i in range(3) for j in range(3)], axis=-1)
-        crop = (slice(0, (height - 4 * spacing) // TILE * TILE), slice(0, (width - 4 * spacing) // TILE * TILE))
-        sums = sums + _tile_sums(pairs[crop] * good[crop][..., None])
-        counts = counts + _tile_sums(good[crop][..., None])
-        level = level + _tile_sums(trimmed[crop] * good[crop][..., None])
+        crop = (slice(0, rows * TILE), slice(0, columns * TILE))
+        sums += _tile_sums(pairs[crop] * good[crop][..., None])
+        counts += _tile_sums(good[crop][..., None])
+        level += _tile_sums(trimmed[crop] * good[crop][..., None])
     full = counts[..., 0] >= TILE * TILE
     if not np.any(full):
         return None
@@ -134,9 +135,7 @@ def _tiles(linear: NDArray[np.floating], spacing: int, usable: NDArray[np.bool_]
 
 def _fourth_difference(linear: NDArray[np.floating], spacing: int, axis: int) -> FloatArray:
     length = linear.shape[axis] - 4 * spacing
-    total = sum(
-        weight * _along(linear, axis, k * spacing, length) for k, weight in enumerate(FOURTH_DIFFERENCE)
-    )
+    total = sum(weight * _along(linear, axis, k * spacing, length) for k, weight in enumerate(FOURTH_DIFFERENCE))
     other = 1 - axis
     return np.asarray(_along(np.asarray(total), other, 2 * spacing, linear.shape[other] - 4 * spacing), dtype=float)
 

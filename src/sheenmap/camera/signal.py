@@ -4,6 +4,7 @@ Values, variance and flags travel together, and each step leaves a line in the h
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import cv2
 import numpy as np
@@ -57,13 +58,14 @@ class Signal:
 
 
 def linear_frame(
-    codes: NDArray[np.generic], encoding: Encoding, full_scale: float, *, frames: int = 1, noise: Noise | None = None
+    codes: NDArray[Any], encoding: Encoding, full_scale: float, *, frames: int = 1, noise: Noise | None = None
 ) -> Frame:
     """A picture's codes (H, W, 3) made linear; its noise is estimated when ``noise`` is None.
 
     ``codes`` may be a mean of ``frames`` pictures (then float). A value at full scale in any channel is clipped.
     """
-    clipped = np.any(codes >= full_scale, axis=-1) if codes.dtype.kind != "f" or full_scale > 1 else np.any(codes > full_scale, axis=-1)
+    is_float_picture = full_scale == 1 and codes.dtype.kind == "f"
+    clipped = np.any(codes > full_scale if is_float_picture else codes >= full_scale, axis=-1)
     values = linear_codes(codes, encoding, full_scale)
     rounding = Rounding(encoding=encoding, full_scale=full_scale) if full_scale > 1 else None
     if noise is None:
@@ -71,7 +73,7 @@ def linear_frame(
     return Frame(values=values, clipped=clipped, noise=noise, frames=frames)
 
 
-def linear_codes(codes: NDArray[np.generic], encoding: Encoding, full_scale: float) -> Floats:
+def linear_codes(codes: NDArray[Any], encoding: Encoding, full_scale: float) -> Floats:
     """Codes (H, W, 3) made linear, full scale 1."""
     if codes.dtype.kind == "u":
         every = decode(encoding, np.arange(full_scale + 1), full_scale).astype(np.float32)
@@ -94,7 +96,7 @@ def relative_signal(photo: Frame, blank: Frame, dark: Floats | None) -> Signal:
     flags[_grown(photo.clipped | blank.clipped)] |= np.uint16(SATURATED.mask)
     flags[too_dark] |= np.uint16(DARK.mask)
     return Signal(
-        values=values,
+        values=np.asarray(values, dtype=np.float32),
         variance=(own + from_blank).astype(np.float32),
         flags=flags,
         correlation=photo.noise.correlation,

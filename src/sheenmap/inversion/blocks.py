@@ -39,7 +39,9 @@ def block_size(shape: tuple[int, ...]) -> int:
     return int(np.clip(np.ceil(np.sqrt(shape[0] * shape[1] / MOST_BLOCKS)), SMALLEST, LARGEST))
 
 
-def gather_blocks(signal: Signal, usable: BoolArray, angle_deg: NDArray[np.floating] | None, *, size: int | None = None) -> Blocks:
+def gather_blocks(
+    signal: Signal, usable: BoolArray, angle_deg: NDArray[np.floating] | None, *, size: int | None = None
+) -> Blocks:
     """Blocks of a signal, of its ``usable`` pixels (H, W)."""
     size = size or block_size(usable.shape)
     share = _tiled(usable[..., None].astype(np.float32), size, mode="constant")

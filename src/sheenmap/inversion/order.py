@@ -66,7 +66,7 @@ def choose_order(thickness_nm: FloatArray, chi_square: FloatArray, width_nm: flo
     for down, right in DIRECTIONS:
         expected_nm = down * trend.down_nm + right * trend.right_nm
         total += _aggregate(place_nm, data, width_nm, down, right, expected_nm)
-    return np.argmin(np.where(np.isfinite(data), total, np.inf), axis=-1)
+    return np.asarray(np.argmin(np.where(np.isfinite(data), total, np.inf), axis=-1))
 
 
 def link_cost(difference_nm: FloatArray, width_nm: float) -> FloatArray:
@@ -74,7 +74,9 @@ def link_cost(difference_nm: FloatArray, width_nm: float) -> FloatArray:
     return np.asarray(STEP_COST * np.minimum((difference_nm / width_nm) ** 2, 1.0))
 
 
-def _aggregate(place_nm: FloatArray, data: FloatArray, width_nm: float, down: int, right: int, expected_nm: FloatArray) -> FloatArray:
+def _aggregate(
+    place_nm: FloatArray, data: FloatArray, width_nm: float, down: int, right: int, expected_nm: FloatArray
+) -> FloatArray:
     """Least path cost (h, w, K) along one direction, in which thickness is expected to change by ``expected_nm`` (h, w)."""
     if down == 0:
         swapped = _aggregate(place_nm.swapaxes(0, 1), data.swapaxes(0, 1), width_nm, right, 0, expected_nm.T)

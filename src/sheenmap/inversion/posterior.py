@@ -50,7 +50,8 @@ class Posterior:
 def posterior_near(pixels: Pixels, table: Table, reference_nm: FloatArray, window_nm: FloatArray, doubts: Doubts) -> Posterior:
     """Posterior of pixels whose film lies about ``window_nm`` (N,) or less from ``reference_nm`` (N,)."""
     parts = [
-        _posterior(pixels.part(rows), table, reference_nm[rows], window_nm[rows], doubts) for rows in chunks(len(reference_nm), CHUNK)
+        _posterior(pixels.part(rows), table, reference_nm[rows], window_nm[rows], doubts)
+        for rows in chunks(len(reference_nm), CHUNK)
     ]
     if not parts:
         return Posterior(thickness_nm=np.empty(0), sigma_nm=np.empty(0), chi_square=np.empty(0))

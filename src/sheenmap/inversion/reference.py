@@ -31,7 +31,9 @@ class Planes:
     region: NDArray[np.intp]
     leader: NDArray[np.intp]
 
-    def at(self, row: NDArray[np.intp], column: NDArray[np.intp], block_row: NDArray[np.intp], block_column: NDArray[np.intp]) -> FloatArray:
+    def at(
+        self, row: NDArray[np.intp], column: NDArray[np.intp], block_row: NDArray[np.intp], block_column: NDArray[np.intp]
+    ) -> FloatArray:
         """Thickness of the planes of blocks (N,), carried on to pixels (N,)."""
         middle = (self.size - 1) / 2
         right = column - (block_column * self.size + middle)

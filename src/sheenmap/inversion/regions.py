@@ -66,7 +66,13 @@ def neighbours(known: BoolArray) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
 
 
 def hold_on_shifts(
-    region: NDArray[np.intp], thickness_nm: FloatArray, evidence: Evidence, table: Table, doubts: Doubts, *, unsure: BoolArray | None = None
+    region: NDArray[np.intp],
+    thickness_nm: FloatArray,
+    evidence: Evidence,
+    table: Table,
+    doubts: Doubts,
+    *,
+    unsure: BoolArray | None = None,
 ) -> Shifts:
     """Chi-square of every region (labels (h, w), -1 unknown) moved by every shift, over that of where it stands.
 
@@ -76,7 +82,7 @@ def hold_on_shifts(
     labels, counts = np.unique(flat[flat >= 0], return_counts=True)
     span = table.thickness_nm[-1] - table.thickness_nm[0]
     most = int(np.floor(span / SHIFT_STEP_NM))
-    shift_nm = SHIFT_STEP_NM * np.arange(-most, most + 1)
+    shift_nm = SHIFT_STEP_NM * np.arange(-most, most + 1, dtype=float)
     gap = np.full((labels.size, shift_nm.size), LARGEST_GAP)
     for r, rows in enumerate(_asked(flat, labels, counts)):
         if unsure is None or unsure[r]:
@@ -89,7 +95,9 @@ def _asked(flat: NDArray[np.intp], labels: NDArray[np.intp], counts: NDArray[np.
     """The blocks of each region that are asked: all, or evenly spread ones of a large region."""
     order = np.argsort(flat, kind="stable")
     members = np.split(order[np.count_nonzero(flat < 0) :], np.cumsum(counts)[:-1])
-    return [rows[np.linspace(0, rows.size - 1, min(rows.size, MOST_BLOCKS)).astype(int)] for rows in members] if labels.size else []
+    return (
+        [rows[np.linspace(0, rows.size - 1, min(rows.size, MOST_BLOCKS)).astype(int)] for rows in members] if labels.size else []
+    )
 
 
 def _cost(
@@ -109,7 +117,9 @@ def _cost(
     return cost
 
 
-def _sums(signal: FloatArray, precision: FloatArray, expected: FloatArray, slope: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+def _sums(
+    signal: FloatArray, precision: FloatArray, expected: FloatArray, slope: FloatArray
+) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Sums over the blocks of r'Pr (D,), F'Pr (D, 3) and F'PF (D, 3, 3), for expected signals and slopes (D, N, 3)."""
     along = np.einsum("nij,dnj->dni", precision, slope)
     free = 1.0 / (np.einsum("dni,dni->dn", slope, along) + FREE_NM**-2)

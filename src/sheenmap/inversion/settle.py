@@ -11,10 +11,19 @@ from sheenmap.inversion.blocks import Blocks
 from sheenmap.inversion.candidates import KEPT, Candidates, find_candidates
 from sheenmap.inversion.likelihood import Doubts, covariance
 from sheenmap.inversion.order import choose_order, filled, link_width_nm, no_trend, trend_of
-from sheenmap.inversion.regions import DECIDED_GAP, LARGEST_GAP, LISTED, Evidence, Shifts, boundary_gap, hold_on_shifts, label_regions, neighbours
+from sheenmap.inversion.regions import (
+    DECIDED_GAP,
+    LARGEST_GAP,
+    LISTED,
+    Evidence,
+    Shifts,
+    boundary_gap,
+    hold_on_shifts,
+    label_regions,
+    neighbours,
+)
 from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE
 from sheenmap.lookup import Table, evaluate
-
 
 ROUNDS = 2
 TILE = 16  # blocks
@@ -114,7 +123,9 @@ class _Moved:
     others_nm: FloatArray
 
 
-def _slippery_tiles(thickness_nm: FloatArray, places: FloatArray, costs: FloatArray, known: BoolArray, width_nm: float) -> NDArray[np.intp]:
+def _slippery_tiles(
+    thickness_nm: FloatArray, places: FloatArray, costs: FloatArray, known: BoolArray, width_nm: float
+) -> NDArray[np.intp]:
     """Number of the tile (h, w) where order could slip from block to block without a step, -1 where it cannot.
 
     It can where noise makes blocks fit at thicknesses between two orders, as it does where colour has faded.
@@ -231,9 +242,13 @@ def _without_data(costs: FloatArray, known: BoolArray, nearest: tuple[NDArray[np
 
 def _evidence(blocks: Blocks, correlation: FloatArray) -> Evidence:
     signal = blocks.signal.reshape(-1, 3)
-    noise = covariance(np.maximum(blocks.variance.reshape(-1, 3), 1e-12), correlation, signal, Doubts(shading_u=0, level_u=0, colour_u=0))
+    noise = covariance(
+        np.maximum(blocks.variance.reshape(-1, 3), 1e-12), correlation, signal, Doubts(shading_u=0, level_u=0, colour_u=0)
+    )
     return Evidence(
-        signal=signal, precision=np.linalg.inv(noise), angle_deg=None if blocks.angle_deg is None else blocks.angle_deg.ravel()
+        signal=signal,
+        precision=np.asarray(np.linalg.inv(noise), dtype=float),
+        angle_deg=None if blocks.angle_deg is None else blocks.angle_deg.ravel(),
     )
 
 

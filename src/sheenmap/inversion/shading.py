@@ -5,6 +5,7 @@ from block to block and shading is smooth, so that a smoothed map of brightness 
 """
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.ndimage import gaussian_filter
 
 from sheenmap.arrays import BoolArray, FloatArray
@@ -34,7 +35,9 @@ def estimate_shading(thickness_nm: FloatArray, sure: BoolArray, evidence: Eviden
     return float(np.clip(np.sqrt(max(variance, 0.0)), LEAST_U, MOST_U))
 
 
-def _brightness(rows: np.ndarray, thickness_nm: FloatArray, evidence: Evidence, table: Table) -> tuple[FloatArray, FloatArray]:  # type: ignore[type-arg]
+def _brightness(
+    rows: NDArray[np.intp], thickness_nm: FloatArray, evidence: Evidence, table: Table
+) -> tuple[FloatArray, FloatArray]:
     """Brightness (N,) over the table's, less 1, and its information."""
     expected, slope = evaluate(table, thickness_nm, None if evidence.angle_deg is None else evidence.angle_deg[rows])
     precision = evidence.precision[rows]

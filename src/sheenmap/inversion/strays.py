@@ -40,7 +40,8 @@ def split_strays(
     defect, film : (H, W) bool
         Defects with their margin, and strays that are film of another thickness. A lone stray pixel is in neither.
     """
-    count, label, stats, _ = cv2.connectedComponentsWithStats(stray.astype(np.uint8), connectivity=8)
+    count, numbers, stats, _ = cv2.connectedComponentsWithStats(stray.astype(np.uint8), connectivity=8)
+    label = np.asarray(numbers, dtype=np.int32)
     area = stats[:, cv2.CC_STAT_AREA]
     extent = np.maximum(stats[:, cv2.CC_STAT_WIDTH], stats[:, cv2.CC_STAT_HEIGHT])
     share_on = _sums(label, on_curve & stray, count) / np.maximum(area, 1)

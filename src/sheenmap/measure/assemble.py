@@ -13,7 +13,17 @@ from sheenmap.measure.notes import headline, notes
 from sheenmap.measure.preview import preview
 from sheenmap.measure.result import BudgetLine, Measurement
 from sheenmap.recipe import Recipe
-from sheenmap.uniformity import FORMULAS, PixelEvidence, SiteReading, Statistics, Verdict, judge, nonuniformity, read_sites, statistics
+from sheenmap.uniformity import (
+    FORMULAS,
+    PixelEvidence,
+    SiteReading,
+    Statistics,
+    Verdict,
+    judge,
+    nonuniformity,
+    read_sites,
+    statistics,
+)
 from sheenmap.wafer import Region, site_positions
 
 LEAST_CLAIMED = 0.01  # of the region; less is no map
@@ -26,9 +36,9 @@ def assemble(
 ) -> Measurement:  # fmt: skip
     """The measurement that the arrays amount to."""
     signal, doubts = inversion.signal, inversion.doubts
-    flags, sigma_nm = inversion.flags, inversion.sigma_nm
+    flags = inversion.flags
     thickness_nm = np.where(is_blocked(flags), np.nan, inversion.thickness_nm).astype(np.float32)
-    sigma_nm = np.where(has(flags, OUTSIDE), np.nan, sigma_nm).astype(np.float32)
+    sigma_nm = np.where(has(flags, OUTSIDE), np.nan, inversion.sigma_nm).astype(np.float32)
     lines = _budget(recipe, table, doubts, thickness_nm, sigma_nm, angle_deg)
     u_common_nm = common_u_nm(lines)
     numbers = statistics(thickness_nm, sigma_nm, flags, region.inside, u_common_nm, noise_correlation=signal.spread)
@@ -56,8 +66,10 @@ def assemble(
         u_common_nm=u_common_nm,
         notes=notes(recipe, frames, table, inversion),
         history=(
-            *signal.history, f"shading left after the blank: {100 * doubts.shading_u:.2f} % rms",
-            f"table of {table.thickness_nm.size} thicknesses, wavelengths {table.wavelength_step_nm:g} nm apart"),
+            *signal.history,
+            f"shading left after the blank: {100 * doubts.shading_u:.2f} % rms",
+            f"table of {table.thickness_nm.size} thicknesses, wavelengths {table.wavelength_step_nm:g} nm apart",
+        ),
         provenance=_provenance(recipe, frames, doubts),
     )
 

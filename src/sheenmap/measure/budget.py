@@ -20,12 +20,21 @@ CHANNELS = ("red", "green", "blue")
 HALF_SPAN_NM = 2.0  # of the small tables that are built about the map's middle
 
 
-def budget(recipe: Recipe, table: Table, doubts: Doubts, *, thickness_nm: float, angle_deg: float, sigma_nm: float) -> tuple[BudgetLine, ...]:
+def budget(
+    recipe: Recipe, table: Table, doubts: Doubts, *, thickness_nm: float, angle_deg: float, sigma_nm: float
+) -> tuple[BudgetLine, ...]:
     """Contributions to the uncertainty at ``thickness_nm`` and ``angle_deg``; ``sigma_nm`` is the pixels' own at the middle."""
     shifts = {name: abs(shift) for name, shift in _shifts(recipe, table, doubts, thickness_nm, angle_deg)}
     colour = np.sqrt(sum(shifts.pop(f"colour of {channel}") ** 2 for channel in CHANNELS))
     lines = [BudgetLine(name="noise and shading of one pixel", u_nm=sigma_nm, shared=False, note="shrinks over a site")]
-    lines.append(BudgetLine(name="colour of lamp and camera", u_nm=float(colour), shared=True, note=f"{100 * doubts.colour_u:.2g} % of each channel"))
+    lines.append(
+        BudgetLine(
+            name="colour of lamp and camera",
+            u_nm=float(colour),
+            shared=True,
+            note=f"{100 * doubts.colour_u:.2g} % of each channel",
+        )
+    )
     lines += [BudgetLine(name=name, u_nm=float(shift), shared=True) for name, shift in shifts.items() if shift > 0]
     return tuple(lines)
 
@@ -67,8 +76,13 @@ def _scaled(stack: Stack, u: float) -> Stack:
 
 def _signal(recipe: Recipe, stack: Stack, thickness_nm: float, angle_deg: float) -> FloatArray:
     shot = recipe.shots[0]
+    view = View(angle_deg=angle_deg, aperture=shot.view.aperture, polarisation=shot.view.polarisation)
     small = build_table(
-        stack, (max(0.0, thickness_nm - HALF_SPAN_NM), thickness_nm + HALF_SPAN_NM), light=shot.light, response=shot.camera.response,
-        blank=shot.camera.blank_surface, view=View(angle_deg=angle_deg, aperture=shot.view.aperture, polarisation=shot.view.polarisation),
-    )  # fmt: skip
+        stack,
+        (max(0.0, thickness_nm - HALF_SPAN_NM), thickness_nm + HALF_SPAN_NM),
+        light=shot.light,
+        response=shot.camera.response,
+        blank=shot.camera.blank_surface,
+        view=view,
+    )
     return np.asarray(evaluate(small, np.array([thickness_nm]))[0][0])

@@ -108,7 +108,9 @@ def _lines(e: Explanation) -> list[str]:
     if e.chi_square is not None:
         lines.append(f"  chi-square {e.chi_square:.1f} (two degrees of freedom; above 13.8 is off the curve)")
     lines.append("  thicknesses that fit this pixel by itself:")
-    lines += [f"    {c.thickness_nm:8.1f} nm   chi-square {c.chi_square:6.1f}   odds {c.odds:.2g}" for c in e.candidates] or ["    none"]
+    lines += [f"    {c.thickness_nm:8.1f} nm   chi-square {c.chi_square:6.1f}   odds {c.odds:.2g}" for c in e.candidates] or [
+        "    none"
+    ]
     if e.order_gap is not None:
         lines.append(f"  the region's next best order is worse by {e.order_gap:.1f} in chi-square (13.8 decides)")
     if e.others_nm:

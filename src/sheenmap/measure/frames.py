@@ -74,7 +74,11 @@ def _size_faults(picture: Picture, blank: Averaged, dark: Averaged | None, angle
     faults = []
     if min(height, width) < SMALLEST:
         faults.append(Fault(key="PHOTO", found=f"{width} x {height} pixels", allowed=f"at least {SMALLEST} x {SMALLEST}"))
-    others = {"camera.blank.photo": blank.codes, "camera.dark": None if dark is None else dark.codes, "view.angle_deg.photo": angle_deg}
+    others = {
+        "camera.blank.photo": blank.codes,
+        "camera.dark": None if dark is None else dark.codes,
+        "view.angle_deg.photo": angle_deg,
+    }
     for key, other in others.items():
         if other is not None and other.shape[:2] != (height, width):
             found = f"{other.shape[1]} x {other.shape[0]} pixels"
@@ -96,7 +100,10 @@ def _level_faults(picture: Picture, blank: Averaged, dark: Averaged | None) -> l
         found = f"{100 * clipped:.0f} % of its pixels at full scale"
         faults.append(Fault(key="camera.blank.photo", found=found, allowed=f"{100 * MOST_CLIPPED:.0f} %", hint="expose less"))
     if dark is not None:
-        levels = {name: float(np.mean(codes)) for name, codes in (("photo", picture.codes), ("blank", blank.codes), ("dark", dark.codes))}
+        levels = {
+            name: float(np.mean(codes))
+            for name, codes in (("photo", picture.codes), ("blank", blank.codes), ("dark", dark.codes))
+        }
         brighter = [name for name in ("photo", "blank") if levels["dark"] >= levels[name]]
         if brighter:
             found = f"mean code {levels['dark']:.1f}, not below the {' and the '.join(brighter)}'s {levels[brighter[0]]:.1f}"

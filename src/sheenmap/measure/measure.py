@@ -35,9 +35,7 @@ class Road:
     inversion: Inversion
 
 
-def measure(
-    photo: Path, recipe: Recipe, *, progress: Progress | None = None, with_candidates: bool = False
-) -> Measurement:
+def measure(photo: Path, recipe: Recipe, *, progress: Progress | None = None, with_candidates: bool = False) -> Measurement:
     """Film thickness, its uncertainty and flags at every pixel of a photograph.
 
     Parameters
@@ -84,7 +82,12 @@ def travel(photo: Path, recipe: Recipe, *, progress: Progress | None = None) -> 
     )  # fmt: skip
     _tell(progress, 3)
     inversion = invert(
-        signal, table, region.inside, angle_deg=angle_deg, doubts=doubts_of(recipe), shading_is_known=shot.camera.shading_u is not None
+        signal,
+        table,
+        region.inside,
+        angle_deg=angle_deg,
+        doubts=doubts_of(recipe),
+        shading_is_known=shot.camera.shading_u is not None,
     )
     _tell(progress, 5)
     return Road(frames=frames, region=region, angle_deg=angle_deg, table=table, inversion=inversion)

@@ -43,9 +43,14 @@ def notes(recipe: Recipe, frames: Frames, table: Table, inversion: Inversion) ->
     found = [f"{frames.picture.path.name} {note}" for note in frames.notes]
     camera = recipe.shots[0].camera
     if camera.colour_u is None:
-        found.append(f"the recipe does not say how well lamp and camera are known: {100 * inversion.doubts.colour_u:.1f} % of each channel assumed (camera.colour_u)")
+        found.append(
+            "the recipe does not say how well lamp and camera are known: "
+            f"{100 * inversion.doubts.colour_u:.1f} % of each channel assumed (camera.colour_u)"
+        )
     if recipe.index_scale.u == 0:
-        found.append("the film's index is taken as exact; 1 % of it is about 1 % of the thickness (index_scale = { value = 1.0, u = ... })")
+        found.append(
+            "the film's index is taken as exact; 1 % of it is about 1 % of the thickness (index_scale = { value = 1.0, u = ... })"
+        )
     inside = inversion.flags[(inversion.flags & np.uint16(OUTSIDE.mask)) == 0]
     for flag in FLAGS:
         share = float(np.mean(has(inside, flag))) if inside.size else 0.0

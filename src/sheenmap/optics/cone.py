@@ -38,9 +38,7 @@ def directions(view: View, phase_span: float) -> Directions:
     nodes = 0.5 * (low + high) + 0.5 * (high - low) * x
     terms = _lagrange(nodes, cosine)
     part_s = share_s * (1 - mixed) + (1 - share_s) * mixed
-    return Directions(
-        angle_rad=np.arccos(np.clip(nodes, -1, 1)), s=terms @ (weight * part_s), p=terms @ (weight * (1 - part_s))
-    )
+    return Directions(angle_rad=np.arccos(np.clip(nodes, -1, 1)), s=terms @ (weight * part_s), p=terms @ (weight * (1 - part_s)))
 
 
 def _pupil(axis_rad: float, aperture: float) -> tuple[FloatArray, FloatArray, FloatArray]:

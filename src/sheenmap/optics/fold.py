@@ -39,9 +39,7 @@ def fold(stack: Stack, wavelength_nm: FloatArray, angle_rad: float, polarisation
     q = [normal_index(index, sine) for index in indices]
     eta = [admittance(index, q_j, polarisation) for index, q_j in zip(indices, q)]
     rough_nm = [*(layer.rough_nm for layer in stack.layers), stack.substrate_rough_nm]
-    faces = [
-        roughened(face(eta[j], eta[j + 1]), q[j], q[j + 1], rough_nm[j], wavelength_nm) for j in range(len(indices) - 1)
-    ]
+    faces = [roughened(face(eta[j], eta[j + 1]), q[j], q[j + 1], rough_nm[j], wavelength_nm) for j in range(len(indices) - 1)]
     crossings = [
         None if layer.thickness_nm is None else np.exp(-2j * np.pi * q_j * layer.thickness_nm / wavelength_nm)
         for layer, q_j in zip(stack.layers, q[1:-1])

@@ -25,7 +25,7 @@ class Face:
 
 
 def normal_index(index: ComplexArray, sine: float | FloatArray) -> ComplexArray:
-    """q = N cos(theta) = sqrt(N^2 - sine^2), Im q <= 0; ``sine`` is N_0 sin(theta_0) of the first medium (W,)."""
+    """Q = N cos(theta) = sqrt(N^2 - sine^2), Im q <= 0; ``sine`` is N_0 sin(theta_0) of the first medium (W,)."""
     q = np.sqrt(index * index - np.square(sine) + 0j)
     return np.asarray(np.where((q.imag > 0) | ((q.imag == 0) & (q.real < 0)), -q, q))
 

@@ -30,7 +30,7 @@ def reflectance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArra
     (T, W) float
         0 to 1.
     """
-    return reflectance_and_slope(stack, thickness_nm, wavelength_nm, view)[0]
+    return np.asarray(reflectance_and_slope(stack, thickness_nm, wavelength_nm, view)[0])
 
 
 def reflectance_and_slope(
@@ -50,7 +50,7 @@ def bare_reflectance(stack: Stack, wavelength_nm: FloatArray, view: View) -> Flo
     """Reflectance (W,) of a stack without a searched layer."""
     if stack.searched is not None:
         raise ValueError("the stack has a searched layer")
-    return reflectance(stack, np.zeros(1), wavelength_nm, view)[0]
+    return np.asarray(reflectance(stack, np.zeros(1), wavelength_nm, view)[0])
 
 
 def transmittance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View) -> FloatArray:
@@ -67,7 +67,7 @@ def transmittance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatAr
     total = np.zeros((thickness_nm.size, wavelength_nm.size))
     for weight, folded, _, _ in _seen(stack, thickness_nm, wavelength_nm, view):
         total += weight * film_powers(folded, thickness_nm).t
-    return total
+    return np.asarray(total)
 
 
 def _seen(
@@ -96,7 +96,12 @@ def _phase_span(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArra
 
 
 def _one(
-    stack: Stack, folded: Folded, thickness_nm: FloatArray, wavelength_nm: FloatArray, angle_rad: float, polarisation: Literal["s", "p"]
+    stack: Stack,
+    folded: Folded,
+    thickness_nm: FloatArray,
+    wavelength_nm: FloatArray,
+    angle_rad: float,
+    polarisation: Literal["s", "p"],
 ) -> tuple[FloatArray, FloatArray]:
     if stack.back is None and folded.lower is not None:
         return film_reflectance(folded, thickness_nm)

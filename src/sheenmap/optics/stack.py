@@ -70,7 +70,10 @@ class Stack:
 
 @dataclass(frozen=True, kw_only=True)
 class View:
-    """How the stack is lit and seen: angle of incidence in the medium, numerical aperture of the evenly filled cone, polarisation."""
+    """How the stack is lit and seen.
+
+    Angle of incidence in the medium, numerical aperture of the evenly filled cone about it, polarisation.
+    """
 
     angle_deg: float = 0.0
     aperture: float = 0.0

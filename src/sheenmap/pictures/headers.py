@@ -37,7 +37,7 @@ class Header:
 
 
 def file_kind(data: bytes) -> str:
-    """ "png", "jpeg", "tiff" or another by the file's signature; "" when no picture is known by it."""
+    """Kind of the file by its signature, such as "png", "jpeg" or "tiff"; an empty string when no picture is known by it."""
     return next((kind for signature, kind in SIGNATURES if data.startswith(signature)), "")
 
 
@@ -82,7 +82,13 @@ def jpeg_header(data: bytes) -> Header | None:
             bits, height, width, components = struct.unpack(">BHHB", body[:6])
             channels = {1: "greyscale", 3: "colour", 4: "CMYK"}.get(components, "unknown")
             return Header(
-                kind="jpeg", width=width, height=height, bits=bits, channels=channels, orientation=orientation, has_profile=has_profile
+                kind="jpeg",
+                width=width,
+                height=height,
+                bits=bits,
+                channels=channels,
+                orientation=orientation,
+                has_profile=has_profile,
             )
         at += 2 + length
     return None

@@ -155,7 +155,7 @@ def _looks_like(data: bytes, kind: str) -> str:
 
 
 def _full_scale(codes: Codes) -> float:
-    return 1.0 if codes.dtype.kind == "f" else float(np.iinfo(codes.dtype).max)
+    return {1: 255.0, 2: 65535.0, 4: 1.0}[codes.dtype.itemsize]
 
 
 def _size(codes: Codes) -> str:

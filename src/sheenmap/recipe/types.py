@@ -30,10 +30,20 @@ class NoiseSpec:
 class CameraSetup:
     """The camera, and the pictures that go with a photograph.
 
-    ``response`` holds (3, W) sensitivities per watt in the order red, green, blue. ``blank_surface`` is a stack without a
-    searched layer, or a reflectance curve. ``blank_frames`` and ``dark_frames`` are averaged. ``level_u`` is the relative
-    standard uncertainty of the exposure of the photograph against the blank's; ``colour_u`` that of each channel's colour
-    (lamp, response) beyond it, None: a usual one is assumed; ``shading_u`` the shading left after the blank, None: estimated from the picture.
+    Parameters
+    ----------
+    response : Spectrum
+        (3, W) sensitivities per watt in the order red, green, blue.
+    blank_surface : Stack, Spectrum or None
+        A stack without a searched layer, or a reflectance curve.
+    dark_frames, stray_frames, blank_frames : tuple of Path
+        Each averaged.
+    level_u : float
+        Relative standard uncertainty of the exposure of the photograph against the blank's.
+    colour_u : float or None
+        That of each channel by itself, from lamp and response; None: a usual one is assumed.
+    shading_u : float or None
+        Brightness left after the blank, rms; None: taken from the picture.
     """
 
     response: Spectrum
