@@ -9,8 +9,9 @@ from numpy.typing import NDArray
 from sheenmap.arrays import BoolArray, FloatArray
 from sheenmap.camera import Signal
 from sheenmap.flags import AMBIGUOUS, AT_LIMIT, BY_CONTINUITY, DARK, OFF_CURVE, OUTSIDE, WEAK, FlagArray, is_blocked
-from sheenmap.inversion.blocks import gather_blocks
+from sheenmap.inversion.blocks import Blocks, gather_blocks
 from sheenmap.inversion.candidates import find_candidates
+from sheenmap.inversion.contradiction import is_contradicted
 from sheenmap.inversion.likelihood import Doubts
 from sheenmap.inversion.local import Local, around, fit_locally, pixels_at
 from sheenmap.inversion.posterior import posterior_near
@@ -35,6 +36,7 @@ class Inversion:
 
     ``thickness_nm`` and ``sigma_nm`` are NaN where no value was formed; whether it is claimed is for ``flags`` to say.
     ``chi_square`` is that of the best fit; ``block`` the block that led a pixel; ``settled`` what the blocks hold.
+    ``is_contradicted`` tells that the picture as a whole does not go with the table; then nothing is claimed.
     ``signal`` and ``doubts`` are the ones that were used in the end: with the noise and the shading that the picture showed.
     """
 
@@ -46,6 +48,8 @@ class Inversion:
     settled: Settled
     signal: Signal
     doubts: Doubts
+    blocks: Blocks
+    is_contradicted: bool
 
 
 def invert(
@@ -60,16 +64,16 @@ def invert(
     flags[~inside] = np.uint16(OUTSIDE.mask)
     flags[inside & _is_black(signal, table)] |= np.uint16(DARK.mask)
     usable = ~is_blocked(flags)
-    settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
+    blocks, settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     if signal.spread > 1:
         signal = _with_shared_noise(signal, usable, angle_deg, table, planes, doubts)
-        settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
+        blocks, settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     if not shading_is_known:
         shading_u = estimate_shading(settled.thickness_nm, settled.sure, settled.evidence, table) or doubts.shading_u
         is_worse = shading_u > MUCH_MORE_SHADING * doubts.shading_u
         doubts = replace(doubts, shading_u=shading_u)
         if is_worse:
-            settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
+            blocks, settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     local = fit_locally(signal, usable, angle_deg, table, planes, doubts)
     thickness_nm, sigma_nm, chi_square = local.thickness_nm, local.sigma_nm, local.chi_square
     stray = usable & ~(chi_square <= OFF_CURVE_CHI_SQUARE)
@@ -77,19 +81,22 @@ def invert(
     _flag_strays(flags, stray, elsewhere, _steps(local.block, settled), thickness_nm, sigma_nm, chi_square)
     _flag_order(flags, local, settled, stray)
     _flag_values(flags, thickness_nm, sigma_nm, table)
+    contradicted = is_contradicted(blocks, settled.region)
+    if contradicted:
+        flags[usable] |= np.uint16(OFF_CURVE.mask)
     return Inversion(
         thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block,
-        settled=settled, signal=signal, doubts=doubts,
+        settled=settled, signal=signal, doubts=doubts, blocks=blocks, is_contradicted=contradicted,
     )  # fmt: skip
 
 
 def _settled_planes(
     signal: Signal, usable: BoolArray, angle_deg: NDArray[np.floating] | None, table: Table, doubts: Doubts
-) -> tuple[Settled, Planes]:
+) -> tuple[Blocks, Settled, Planes]:
     blocks = gather_blocks(signal, usable, angle_deg)
     pixel_variance = blocks.variance * blocks.pixels_worth
     settled = settle(blocks, pixel_variance, signal.correlation, table, doubts)
-    return settled, fit_planes(settled.thickness_nm, settled.sigma_nm, settled.region, blocks.size)
+    return blocks, settled, fit_planes(settled.thickness_nm, settled.sigma_nm, settled.region, blocks.size)
 
 
 def _with_shared_noise(
