@@ -4,27 +4,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from sheenmap import __version__
-from sheenmap.flags import OUTSIDE, FlagArray, has, is_blocked
+from sheenmap.flags import OUTSIDE, has, is_blocked
 from sheenmap.inversion import Doubts, Inversion
 from sheenmap.lookup import Table
 from sheenmap.measure.budget import budget, common_u_nm
 from sheenmap.measure.frames import Frames
+from sheenmap.measure.judging import judge_map, read_recipe_sites
 from sheenmap.measure.notes import headline, notes
 from sheenmap.measure.preview import preview
 from sheenmap.measure.result import BudgetLine, Measurement
 from sheenmap.recipe import Recipe
-from sheenmap.uniformity import (
-    FORMULAS,
-    PixelEvidence,
-    SiteReading,
-    Statistics,
-    Verdict,
-    judge,
-    nonuniformity,
-    read_sites,
-    statistics,
-)
-from sheenmap.wafer import Region, site_positions
+from sheenmap.uniformity import FORMULAS, SiteReading, nonuniformity, statistics
+from sheenmap.wafer import Region
 
 LEAST_CLAIMED = 0.01  # of the region; less is no map
 Listed = tuple[NDArray[np.float32], NDArray[np.float32]]
@@ -43,7 +34,10 @@ def assemble(
     u_common_nm = common_u_nm(lines)
     numbers = statistics(thickness_nm, sigma_nm, flags, region.inside, u_common_nm, noise_correlation=signal.spread)
     is_measured = numbers.claimed >= LEAST_CLAIMED * max(numbers.pixels, 1)
-    readings = _sites(recipe, region, thickness_nm, sigma_nm, flags, u_common_nm, signal.spread)
+    readings = read_recipe_sites(recipe, region, thickness_nm, sigma_nm, flags, u_common_nm, spread=signal.spread)
+    verdict = None
+    if is_measured and recipe.tolerance is not None:
+        verdict = judge_map(recipe, region, thickness_nm, sigma_nm, flags, readings, numbers, u_common_nm)
     image, scale = preview(frames)
     return Measurement(
         title=recipe.title,
@@ -61,7 +55,7 @@ def assemble(
         candidate_odds=None if listed is None else listed[1],
         sites=readings,
         nonuniformity_percent=_formulas(readings, recipe),
-        verdict=_verdict(recipe, readings, numbers, u_common_nm, thickness_nm, sigma_nm, flags, region) if is_measured else None,
+        verdict=verdict,
         budget=lines,
         u_common_nm=u_common_nm,
         notes=notes(recipe, frames, table, inversion),
@@ -70,7 +64,7 @@ def assemble(
             f"shading left after the blank: {100 * doubts.shading_u:.2f} % rms",
             f"table of {table.thickness_nm.size} thicknesses, wavelengths {table.wavelength_step_nm:g} nm apart",
         ),
-        provenance=_provenance(recipe, frames, doubts),
+        provenance=_provenance(recipe, frames, inversion, doubts),
     )
 
 
@@ -86,39 +80,20 @@ def _budget(
     return budget(recipe, table, doubts, thickness_nm=middle_nm, angle_deg=angle, sigma_nm=own_nm)
 
 
-def _sites(
-    recipe: Recipe, region: Region, thickness_nm: NDArray[np.float32], sigma_nm: NDArray[np.float32], flags: FlagArray,
-    u_common_nm: float, spread: float,
-) -> tuple[SiteReading, ...]:  # fmt: skip
-    if recipe.sites is None:
-        return ()
-    places = site_positions(recipe.sites, region)
-    return read_sites(thickness_nm, sigma_nm, flags, places, u_common_nm, noise_correlation=spread)
-
-
 def _formulas(readings: tuple[SiteReading, ...], recipe: Recipe) -> dict[str, float | None]:
     values = [reading.thickness_nm for reading in readings if reading.thickness_nm is not None]
     target_nm = None if recipe.tolerance is None else recipe.tolerance.target_nm
     return {name: nonuniformity(values, name, target_nm=target_nm) for name in FORMULAS} if len(values) > 1 else {}
 
 
-def _verdict(
-    recipe: Recipe, readings: tuple[SiteReading, ...], numbers: Statistics, u_common_nm: float, thickness_nm: NDArray[np.float32],
-    sigma_nm: NDArray[np.float32], flags: FlagArray, region: Region,
-) -> Verdict | None:  # fmt: skip
-    if recipe.tolerance is None:
-        return None
-    pixels = PixelEvidence(thickness_nm=thickness_nm, sigma_nm=sigma_nm, flags=flags, inside=region.inside)
-    return judge(recipe.tolerance, readings, numbers, u_common_nm=u_common_nm, pixels=pixels)
-
-
-def _provenance(recipe: Recipe, frames: Frames, doubts: Doubts) -> dict[str, object]:
+def _provenance(recipe: Recipe, frames: Frames, inversion: Inversion, doubts: Doubts) -> dict[str, object]:
     return {
         "sheenmap": __version__,
         "recipe": recipe.path.name,
         "recipe_sha256": recipe.digest,
         "recipe_text": recipe.text,
         "pictures_sha256": frames.digests,
+        "noise_spread": inversion.signal.spread,
         "shading_u": doubts.shading_u,
         "level_u": doubts.level_u,
         "colour_u": doubts.colour_u,

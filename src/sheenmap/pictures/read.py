@@ -97,8 +97,8 @@ def average_frames(paths: Sequence[Path]) -> Averaged:
     return Averaged(codes=total / np.float32(len(paths)), full_scale=first.full_scale, frames=len(paths), digests=digests)
 
 
-def read_plane(path: Path, *, most_pixels: int = MOST_PIXELS) -> NDArray[np.float32]:
-    """Read one finite number a pixel (H, W) from a TIFF of one channel. Raises ``PictureError``."""
+def read_plane(path: Path, *, finite: bool = True, most_pixels: int = MOST_PIXELS) -> NDArray[np.float32]:
+    """Read one number a pixel (H, W) from a TIFF of one channel; ``finite`` refuses NaN. Raises ``PictureError``."""
     data = _read_bytes(path)
     if file_kind(data) != "tiff":
         _refuse(path, "not a TIFF", "a TIFF with one float a pixel is needed")
@@ -106,7 +106,7 @@ def read_plane(path: Path, *, most_pixels: int = MOST_PIXELS) -> NDArray[np.floa
         plane = tiff_plane(data, most_pixels)
     except UnusableError as why:
         _refuse(path, why.reason, why.detail)
-    if not np.all(np.isfinite(plane)):
+    if finite and not np.all(np.isfinite(plane)):
         _refuse(path, "not finite", "every pixel needs a number")
     return plane
 

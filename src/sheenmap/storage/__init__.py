@@ -9,6 +9,7 @@ from sheenmap.storage.atomic import check_folder, write_atomically, write_togeth
 from sheenmap.storage.document import SCHEMA_VERSION, render_json, summary, to_plain
 from sheenmap.storage.finished import FinishedMap, MapError, read_map
 from sheenmap.storage.measurement import renew_summary, write_measurement
+from sheenmap.storage.picture import write_png
 
 __all__ = [
     "SCHEMA_VERSION",
@@ -22,5 +23,6 @@ __all__ = [
     "to_plain",
     "write_atomically",
     "write_measurement",
+    "write_png",
     "write_together",
 ]
