@@ -87,9 +87,9 @@ BLOCKING_MASK: int = sum(flag.mask for flag in FLAGS if flag.blocks)
 
 def is_blocked(flags: FlagArray) -> NDArray[np.bool_]:
     """True where a flag forbids the claim. Shape of ``flags``."""
-    return (flags & np.uint16(BLOCKING_MASK)) != 0
+    return np.asarray((flags & np.uint16(BLOCKING_MASK)) != 0)
 
 
 def has(flags: FlagArray, flag: Flag) -> NDArray[np.bool_]:
     """True where ``flag`` is raised. Shape of ``flags``."""
-    return (flags & np.uint16(flag.mask)) != 0
+    return np.asarray((flags & np.uint16(flag.mask)) != 0)

@@ -144,7 +144,11 @@ def _index(wavelength_nm: NDArray[np.float64], values: NDArray[np.float64]) -> S
 
 
 def _numbers(text: str, columns: tuple[str, ...]) -> NDArray[np.float64]:
-    lines = [(number, line) for number, line in enumerate(text.lstrip("\ufeff").splitlines(), start=1) if line.strip() and not line.lstrip().startswith("#")]
+    lines = [
+        (number, line)
+        for number, line in enumerate(text.lstrip("\ufeff").splitlines(), start=1)
+        if line.strip() and not line.lstrip().startswith("#")
+    ]
     if not lines:
         raise CurveError(f"the file is empty; its header should be {','.join(columns)}")
     header = [field.strip() for field in lines[0][1].split(",")]
