@@ -1,13 +1,15 @@
 """Walks a TOML table and collects every fault on the way; nothing here knows what a key is for."""
 
 import math
+import re
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any, TypeVar
 
-from sheenmap.errors import CurveError, Fault, UnknownNameError, nearest_name
+from sheenmap.errors import CurveError, Fault, SheenmapError, UnknownNameError, nearest_name
 
 T = TypeVar("T")
-SHORTEST_TEXT = 80
+LONGEST_SHOWN = 80
+BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
 
 
 class Reader:
@@ -20,10 +22,12 @@ class Reader:
     def __init__(self, table: dict[str, Any], path: str, faults: list[Fault]) -> None:
         self.table, self.path, self.faults = table, path, faults
         self._known: list[str] = []
+        self._refused: list[str] = []
 
     def name(self, key: str) -> str:
-        """The full name of a key."""
-        return f"{self.path}.{key}" if self.path else key
+        """The full name of a key, quoted where TOML wants it quoted."""
+        plain = key if BARE_KEY.fullmatch(key) else shown(key)
+        return f"{self.path}.{plain}" if self.path else plain
 
     def fault(self, key: str, found: str, allowed: str = "", hint: str = "") -> None:
         """Note a fault of ``key``."""
@@ -39,8 +43,8 @@ class Reader:
         key: str,
         default: T,
         *,
-        low: float = -math.inf,
-        high: float = math.inf,
+        low: float,
+        high: float,
         open_low: bool = False,
         open_high: bool = False,
     ) -> float | T:
@@ -49,23 +53,26 @@ class Reader:
         if value is None:
             return default
         allowed = _range_text(low, high, open_low=open_low, open_high=open_high)
-        if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
+        number = as_number(value)
+        if number is None:
             self.fault(key, f"found {shown(value)}", allowed)
             return default
-        if value < low or value > high or (open_low and value == low) or (open_high and value == high):
-            self.fault(key, f"found {value:g}", allowed)
+        if number < low or number > high or (open_low and number == low) or (open_high and number == high):
+            self.fault(key, f"found {number:g}", allowed)
             return default
-        return float(value)
+        return number
 
     def numbers(self, key: str, count: int) -> tuple[float, ...] | None:
         """A list of ``count`` finite numbers, or None."""
         value = self.raw(key)
         if value is None:
             return None
-        if not isinstance(value, list) or len(value) != count or not all(is_number(item) for item in value):
+        numbers = [as_number(item) for item in value] if isinstance(value, list) else []
+        known = tuple(number for number in numbers if number is not None)
+        if len(numbers) != count or len(known) != count:
             self.fault(key, f"found {shown(value)}", f"a list of {count} numbers")
             return None
-        return tuple(float(item) for item in value)
+        return known
 
     def text(self, key: str, default: T) -> str | T:
         """A text."""
@@ -90,8 +97,8 @@ class Reader:
         if value is None:
             return default
         if value not in allowed:
-            near = nearest_name(value, allowed) if isinstance(value, str) else ""
-            self.fault(key, f"found {shown(value)}", ", ".join(allowed), f"did you mean {near}?" if near else "")
+            hint = did_you_mean(value, allowed) if isinstance(value, str) else ""
+            self.fault(key, f"found {shown(value)}", ", ".join(allowed), hint)
             return default
         return str(value)
 
@@ -115,45 +122,73 @@ class Reader:
             return []
         return [Reader(item, f"{self.name(key)}[{k}]", self.faults) for k, item in enumerate(value)]
 
-    def attempt(self, key: str, make: Callable[[], T], *, found: str) -> T | None:
-        """What ``make`` returns; its complaint becomes a fault of ``key``."""
+    def attempt(self, key: str, make: Callable[[], T], *, found: str, allowed: str = "") -> T | None:
+        """What ``make`` returns; its complaint becomes a fault of ``key``. ``allowed`` is said of names that do not exist."""
         try:
             return make()
         except UnknownNameError as fault:
-            self.fault(key, f"found {found}", str(fault))
+            hint = f"did you mean {fault.nearest}?" if fault.nearest else ""
+            self.fault(key, f"found {found}", getattr(fault, "allowed", allowed), hint)
         except CurveError as fault:
-            self.fault(key, f"found {found}", str(fault))
+            what, _, wanted = str(fault).partition("; allowed: ")
+            self.fault(key, f"found {found}: {what}", wanted)
+        except SheenmapError as fault:
+            self.fault(key, f"found {found}: {fault}")
         return None
 
+    def require(self, key: str, allowed: str) -> bool:
+        """Whether the key is there; a fault when it is not."""
+        if key not in self.table:
+            self.fault(key, "nothing", allowed)
+        return key in self.table
+
     def not_supported(self, keys: Iterable[str]) -> None:
-        """Refuse keys that the design knows and this release does not."""
+        """Refuse keys that have a meaning which this release cannot give them."""
         for key in keys:
-            if self.raw(key) is not None:
-                self.fault(key, f"found {shown(self.table[key])}", "not supported yet")
+            self._refused.append(key)
+            if key in self.table:
+                self.fault(key, "not supported yet")
 
     def finish(self) -> None:
-        """Report every key that nobody asked for, with the nearest one that is known."""
+        """Report every key that nobody asked for, with the nearest one that is known.
+
+        A key that is missing because it is misspelt is one fault, not two.
+        """
+        known = list(dict.fromkeys(self._known))
         for key in self.table:
-            if key not in self._known:
-                near = nearest_name(key, self._known)
-                self.fault(key, "unknown key", ", ".join(dict.fromkeys(self._known)), f"did you mean {near}?" if near else "")
+            if key not in known and key not in self._refused:
+                self.fault(key, "unknown key", ", ".join(known), did_you_mean(key, known))
+                missing = self.name(nearest_name(key, [name for name in known if name not in self.table]))
+                self.faults[:] = [fault for fault in self.faults if (fault.key, fault.found) != (missing, "nothing")]
 
 
-def is_number(value: Any) -> bool:
-    """Whether a TOML value is a finite number."""
-    return isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value)
+def did_you_mean(name: str, known: Iterable[str]) -> str:
+    """The hint that names the nearest right one, or nothing."""
+    near = nearest_name(name, known)
+    return f"did you mean {near}?" if near else ""
+
+
+def as_number(value: Any) -> float | None:
+    """A TOML value as a finite number, or None when it is none (whole numbers may be too large for one)."""
+    if isinstance(value, bool) or not isinstance(value, int | float):
+        return None
+    try:
+        number = float(value)
+    except OverflowError:
+        return None
+    return number if math.isfinite(number) else None
 
 
 def shown(value: Any) -> str:
-    """A value as a fault shows it, shortened."""
-    text = f'"{value}"' if isinstance(value, str) else str(value)
-    return text if len(text) <= SHORTEST_TEXT else text[: SHORTEST_TEXT - 3] + "..."
+    """A value as a fault shows it: shortened, on one line, without control characters."""
+    try:
+        text = f'"{value}"' if isinstance(value, str) else str(value).lower() if isinstance(value, bool) else str(value)
+    except ValueError:  # Python refuses to print whole numbers of thousands of digits
+        return "a number far too large"
+    plain = "".join(char if char.isprintable() else char.encode("unicode_escape").decode() for char in text)
+    return plain if len(plain) <= LONGEST_SHOWN else plain[: LONGEST_SHOWN - 3] + "..."
 
 
 def _range_text(low: float, high: float, *, open_low: bool, open_high: bool) -> str:
-    if math.isinf(low) and math.isinf(high):
-        return "a number"
-    if math.isinf(high):
-        return f"a number above {low:g}" if open_low else f"{low:g} or more"
-    start = f"above {low:g}" if open_low else f"{low:g}"
-    return f"{start} up to, not including, {high:g}" if open_high else f"{start} to {high:g}"
+    start = f"above {low:.10g}" if open_low else f"{low:.10g}"
+    return f"{start} up to, not including, {high:.10g}" if open_high else f"{start} to {high:.10g}"
