@@ -7,6 +7,7 @@ each shift: cost = sum r'Pr - (sum F'Pr)' (sum F'PF + S^-1)^-1 (sum F'Pr), with 
 prior covariance, and P the block's precision with its own thickness free by ``FREE_NM`` (Woodbury's identity).
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -26,11 +27,13 @@ SHIFT_STEP_NM = 5.0
 MOST_BLOCKS = 64  # of a region that are asked; more would only count the common error again
 LISTED = 6
 CHUNK = 60_000
+FINE_STEPS = (-0.4, -0.2, 0.2, 0.4)  # of a shift step, tried about every low point
+WORTH_REFINING = 200.0  # chi-square; a low point higher than this does not come below what decides by half a step
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Evidence:
-    """What each block knows (N blocks): signal (N, 3), precision by noise alone (N, 3, 3), angle (N,) or None."""
+    """What each block knows (N blocks): signal (N, 3), precision by what blocks do not share (N, 3, 3), angle (N,) or None."""
 
     signal: FloatArray
     precision: FloatArray
@@ -66,17 +69,11 @@ def neighbours(known: BoolArray) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
 
 
 def hold_on_shifts(
-    region: NDArray[np.intp],
-    thickness_nm: FloatArray,
-    evidence: Evidence,
-    table: Table,
-    doubts: Doubts,
-    *,
-    unsure: BoolArray | None = None,
+    region: NDArray[np.intp], thickness_nm: FloatArray, evidence: Evidence, table: Table, doubts: Doubts
 ) -> Shifts:
     """Chi-square of every region (labels (h, w), -1 unknown) moved by every shift, over that of where it stands.
 
-    Only evidence of its own blocks counts. ``unsure`` (R,) limits the work to some regions; others get ``LARGEST_GAP``.
+    Only evidence of its own blocks counts.
     """
     flat = region.ravel()
     labels, counts = np.unique(flat[flat >= 0], return_counts=True)
@@ -85,10 +82,27 @@ def hold_on_shifts(
     shift_nm = SHIFT_STEP_NM * np.arange(-most, most + 1, dtype=float)
     gap = np.full((labels.size, shift_nm.size), LARGEST_GAP)
     for r, rows in enumerate(_asked(flat, labels, counts)):
-        if unsure is None or unsure[r]:
-            cost = _cost(rows, thickness_nm.ravel()[rows], shift_nm, evidence, table, doubts)
-            gap[r] = cost - cost[most]
+        place_nm = thickness_nm.ravel()[rows]
+        cost = _cost(rows, place_nm, shift_nm, evidence, table, doubts)
+        gap[r] = cost - cost[most]
+        gap[r] = _refined(gap[r], shift_nm, lambda fine, rows=rows, place_nm=place_nm, base=cost[most]: (
+            _cost(rows, place_nm, fine, evidence, table, doubts) - base
+        ))  # fmt: skip
     return Shifts(labels=labels, shift_nm=shift_nm, gap=gap)
+
+
+def _refined(gap: FloatArray, shift_nm: FloatArray, gap_at: Callable[[FloatArray], FloatArray]) -> FloatArray:
+    """The gap (D,) with each low point replaced by the least of finer shifts about it."""
+    is_low = np.zeros(gap.size, bool)
+    is_low[1:-1] = (gap[1:-1] <= gap[:-2]) & (gap[1:-1] <= gap[2:]) & (gap[1:-1] < WORTH_REFINING) & (shift_nm[1:-1] != 0)
+    low = np.flatnonzero(is_low)
+    if not low.size:
+        return gap
+    fine_nm = shift_nm[low, None] + SHIFT_STEP_NM * np.array(FINE_STEPS)
+    finer = gap_at(fine_nm.ravel()).reshape(fine_nm.shape)
+    result = gap.copy()
+    result[low] = np.minimum(gap[low], finer.min(axis=1))
+    return result
 
 
 def _asked(flat: NDArray[np.intp], labels: NDArray[np.intp], counts: NDArray[np.intp]) -> list[NDArray[np.intp]]:

@@ -90,7 +90,8 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     thickness_nm = _ordered(filled(places, known, nearest), _without_data(costs, known, nearest), width_nm)
     evidence = _evidence(blocks, correlation)
     slippery = _slippery_tiles(thickness_nm, places, costs, known, width_nm)
-    moved = _move_regions(thickness_nm, known, slippery, places, evidence, table, doubts, width_nm)
+    shaded = _evidence(blocks, correlation, shading_u=doubts.shading_u)
+    moved = _move_regions(thickness_nm, known, slippery, places, shaded, table, doubts, width_nm)
     return Settled(
         thickness_nm=moved.thickness_nm,
         sigma_nm=_sigma(evidence, moved.thickness_nm.ravel(), table).reshape(shape),
@@ -240,11 +241,11 @@ def _without_data(costs: FloatArray, known: BoolArray, nearest: tuple[NDArray[np
     return np.where(known[..., None], costs, np.where(np.isfinite(borrowed), 0.0, np.inf))
 
 
-def _evidence(blocks: Blocks, correlation: FloatArray) -> Evidence:
+def _evidence(blocks: Blocks, correlation: FloatArray, *, shading_u: float = 0.0) -> Evidence:
+    """What the blocks know, by noise alone or with a shading of their own each."""
     signal = blocks.signal.reshape(-1, 3)
-    noise = covariance(
-        np.maximum(blocks.variance.reshape(-1, 3), 1e-12), correlation, signal, Doubts(shading_u=0, level_u=0, colour_u=0)
-    )
+    doubts = Doubts(shading_u=shading_u, level_u=0, colour_u=0)
+    noise = covariance(np.maximum(blocks.variance.reshape(-1, 3), 1e-12), correlation, signal, doubts)
     return Evidence(
         signal=signal,
         precision=np.asarray(np.linalg.inv(noise), dtype=float),
