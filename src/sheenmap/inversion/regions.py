@@ -9,6 +9,7 @@ prior covariance, and P the block's precision with its own thickness free by ``F
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -85,13 +86,12 @@ def hold_on_shifts(
         place_nm = thickness_nm.ravel()[rows]
         cost = _cost(rows, place_nm, shift_nm, evidence, table, doubts)
         gap[r] = cost - cost[most]
-        gap[r] = _refined(gap[r], shift_nm, lambda fine, rows=rows, place_nm=place_nm, base=cost[most]: (
-            _cost(rows, place_nm, fine, evidence, table, doubts) - base
-        ))  # fmt: skip
+        at = partial(_cost, rows, place_nm, evidence=evidence, table=table, doubts=doubts)
+        gap[r] = _refined(gap[r], shift_nm, at, cost[most])
     return Shifts(labels=labels, shift_nm=shift_nm, gap=gap)
 
 
-def _refined(gap: FloatArray, shift_nm: FloatArray, gap_at: Callable[[FloatArray], FloatArray]) -> FloatArray:
+def _refined(gap: FloatArray, shift_nm: FloatArray, cost_at: Callable[[FloatArray], FloatArray], base: float) -> FloatArray:
     """The gap (D,) with each low point replaced by the least of finer shifts about it."""
     is_low = np.zeros(gap.size, bool)
     is_low[1:-1] = (gap[1:-1] <= gap[:-2]) & (gap[1:-1] <= gap[2:]) & (gap[1:-1] < WORTH_REFINING) & (shift_nm[1:-1] != 0)
@@ -99,7 +99,7 @@ def _refined(gap: FloatArray, shift_nm: FloatArray, gap_at: Callable[[FloatArray
     if not low.size:
         return gap
     fine_nm = shift_nm[low, None] + SHIFT_STEP_NM * np.array(FINE_STEPS)
-    finer = gap_at(fine_nm.ravel()).reshape(fine_nm.shape)
+    finer = cost_at(fine_nm.ravel()).reshape(fine_nm.shape) - base
     result = gap.copy()
     result[low] = np.minimum(gap[low], finer.min(axis=1))
     return result

@@ -108,7 +108,7 @@ def test_an_island_with_a_twin_is_ambiguous_and_its_twin_is_listed(rng):
 
 def test_the_same_island_is_settled_by_a_narrower_search(rng):
     table = table_of(OXIDE, (0.0, 1500.0))
-    first, second, _ = twins_of(table)
+    first, _, _ = twins_of(table)
     narrow = table_of(OXIDE, (max(0.0, first - 40), first + 40))
     truth = np.full((96, 96), np.nan)
     truth[30:66, 30:66] = first
