@@ -56,9 +56,9 @@ def oxide_wafer(recipe: dict[str, Any], rng: np.random.Generator) -> Scene:
 
 
 def _disc_with_notch(u: Array, v: Array, pixel: float) -> Array:
-    """Share (H, W) of each pixel that lies on the wafer; the notch of some 3 mm stands at the bottom."""
+    """Share (H, W) of each pixel that lies on the wafer; a notch 1.2 mm deep of 90 degrees stands at the bottom."""
     disc = np.clip((1 - np.hypot(u, v)) / pixel + 0.5, 0, 1)
-    notch = np.clip((0.028 - np.abs(u) - 0.9 * np.maximum(1.0 - v, 0) / 1.0) / pixel + 0.5, 0, 1) * (v > 0)
+    notch = np.clip((v - 0.988 - np.abs(u)) / pixel + 0.5, 0, 1)
     return disc * (1 - notch)
 
 
