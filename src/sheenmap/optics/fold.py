@@ -9,9 +9,16 @@ from typing import Literal
 import numpy as np
 
 from sheenmap.arrays import ComplexArray, FloatArray
-from sheenmap.optics.fresnel import Face, admittance, face, joined, normal_index, roughened
-from sheenmap.optics.medium import index_of, layer_index
+from sheenmap.optics.fresnel import Face, admittance, face, joined, normal_index, open_face, roughened
+from sheenmap.optics.medium import Media, media_of
 from sheenmap.optics.stack import Stack
+
+# A layer within this of its critical angle is moved this far off it. The stack's amplitudes are even in q, so they move as
+# q^2, while their rounding grows as 1 / q: about 1e-10 of each here.
+NEAR_CRITICAL = 3e-11
+NO_DIRECTION = 1e-60  # a half space needs no more than a q that can be divided by
+
+CLEAR_K = 1e-3  # of water, alcohols and oils k is below 1e-4; metals and dyes are no medium to look through at an angle
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -19,41 +26,74 @@ class Folded:
     """A stack at one angle and polarisation, all (W,).
 
     ``upper`` leads from the medium into the searched layer, ``lower`` from it into the substrate; ``phase_per_nm`` is
-    2 pi q / wavelength of the searched layer. Without a searched layer ``lower`` and ``phase_per_nm`` are None and ``upper``
-    is the whole stack. ``q_substrate`` and the admittances of both ends are for powers and for the back.
+    2 pi q / wavelength of the searched layer. Without a searched layer ``upper`` is the whole stack, ``lower`` lets all
+    through and ``phase_per_nm`` is 0. ``q_substrate`` and the admittances of both ends are for powers and for the back.
     """
 
     upper: Face
-    lower: Face | None
-    phase_per_nm: ComplexArray | None
+    lower: Face
+    phase_per_nm: ComplexArray
     q_substrate: ComplexArray
     eta_medium: ComplexArray
     eta_substrate: ComplexArray
 
 
 def fold(stack: Stack, wavelength_nm: FloatArray, angle_rad: float, polarisation: Literal["s", "p"]) -> Folded:
-    """Fold a stack about its searched layer; ``angle_rad`` is in the medium, which must not absorb."""
-    medium = index_of(stack.medium, wavelength_nm)
-    indices = [medium, *(layer_index(layer, wavelength_nm) for layer in stack.layers), index_of(stack.substrate, wavelength_nm)]
-    sine = medium.real * np.sin(angle_rad)
-    q = [normal_index(index, sine) for index in indices]
-    eta = [admittance(index, q_j, polarisation) for index, q_j in zip(indices, q)]
-    rough_nm = [*(layer.rough_nm for layer in stack.layers), stack.substrate_rough_nm]
-    faces = [roughened(face(eta[j], eta[j + 1]), q[j], q[j + 1], rough_nm[j], wavelength_nm) for j in range(len(indices) - 1)]
-    crossings = [
-        None if layer.thickness_nm is None else np.exp(-2j * np.pi * q_j * layer.thickness_nm / wavelength_nm)
-        for layer, q_j in zip(stack.layers, q[1:-1])
-    ]
+    """Fold a stack about its searched layer.
+
+    Parameters
+    ----------
+    wavelength_nm : (W,) float
+        In vacuum.
+    angle_rad : float
+        In the medium, 0 up to, not including, pi / 2.
+
+    Raises
+    ------
+    ValueError
+        For a medium that absorbs, seen at an angle.
+    """
+    return fold_media(stack, media_of(stack, wavelength_nm), angle_rad, polarisation)
+
+
+def fold_media(stack: Stack, media: Media, angle_rad: float, polarisation: Literal["s", "p"]) -> Folded:
+    """As ``fold``, from indices that have been sampled."""
+    sine = snell_invariant(media, angle_rad)
+    ends = (0, len(media.indices) - 1)
+    q = [normal_index(n, sine, NO_DIRECTION if j in ends else NEAR_CRITICAL) for j, n in enumerate(media.indices)]
+    eta = [admittance(index, q_j, polarisation) for index, q_j in zip(media.indices, q)]
+    faces, crossings = _faces(stack, media, q, eta), _crossings(stack, media, q)
     at = stack.searched
     split = len(faces) if at is None else at + 1
     return Folded(
         upper=_joined_all(faces[:split], crossings[: split - 1]),
-        lower=None if at is None else _joined_all(faces[split:], crossings[split:]),
-        phase_per_nm=None if at is None else 2 * np.pi * q[at + 1] / wavelength_nm,
+        lower=open_face(q[0].size) if at is None else _joined_all(faces[split:], crossings[split:]),
+        phase_per_nm=np.zeros_like(q[0]) if at is None else 2 * np.pi * q[at + 1] / media.wavelength_nm,
         q_substrate=q[-1],
         eta_medium=eta[0],
         eta_substrate=eta[-1],
     )
+
+
+def snell_invariant(media: Media, angle_rad: float) -> FloatArray:
+    """N_0 sin(theta_0) (W,), the same in every layer."""
+    medium = media.indices[0]
+    darkest = float(np.max(-medium.imag, initial=0.0))
+    if angle_rad != 0 and darkest > CLEAR_K:
+        raise ValueError(f"the medium absorbs (k = {darkest:g}); at an angle k may be up to {CLEAR_K:g}")
+    return np.asarray(medium.real * np.sin(angle_rad))
+
+
+def _faces(stack: Stack, media: Media, q: list[ComplexArray], eta: list[ComplexArray]) -> list[Face]:
+    rough_nm = [*(layer.rough_nm for layer in stack.layers), stack.substrate_rough_nm]
+    return [roughened(face(eta[j], eta[j + 1]), q[j], q[j + 1], rough, media.wavelength_nm) for j, rough in enumerate(rough_nm)]
+
+
+def _crossings(stack: Stack, media: Media, q: list[ComplexArray]) -> list[ComplexArray | None]:
+    return [
+        None if layer.thickness_nm is None else np.exp(-2j * np.pi * q_j * layer.thickness_nm / media.wavelength_nm)
+        for layer, q_j in zip(stack.layers, q[1:-1])
+    ]
 
 
 def _joined_all(faces: list[Face], crossings: list[ComplexArray | None]) -> Face:

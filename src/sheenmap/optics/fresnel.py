@@ -24,9 +24,20 @@ class Face:
     t_up: ComplexArray
 
 
-def normal_index(index: ComplexArray, sine: float | FloatArray) -> ComplexArray:
-    """Q = N cos(theta) = sqrt(N^2 - sine^2), Im q <= 0; ``sine`` is N_0 sin(theta_0) of the first medium (W,)."""
-    q = np.sqrt(index * index - np.square(sine) + 0j)
+def normal_index(index: ComplexArray, sine: float | FloatArray, smallest: float) -> ComplexArray:
+    """Normal part q = N cos(theta) = sqrt(N^2 - sine^2) of an index, Im q <= 0.
+
+    Parameters
+    ----------
+    index : (W,) complex
+    sine : float or (W,) float
+        N_0 sin(theta_0) of the first medium.
+    smallest : float
+        Least |q|^2. Exactly at a critical angle q is 0, and a layer's amplitudes are 0 / 0 though the stack's are finite.
+    """
+    square = index * index - np.square(sine)
+    square = np.where(np.abs(square) < smallest, smallest, square)
+    q = np.sqrt(square)
     return np.asarray(np.where((q.imag > 0) | ((q.imag == 0) & (q.real < 0)), -q, q))
 
 
@@ -42,14 +53,24 @@ def face(above: ComplexArray, below: ComplexArray) -> Face:
     return Face(r_down=r, t_down=2 * above / total, r_up=-r, t_up=2 * below / total)
 
 
+def open_face(count: int) -> Face:
+    """A face between a medium and itself at ``count`` wavelengths: all light passes."""
+    none, all_of_it = np.zeros(count, dtype=complex), np.ones(count, dtype=complex)
+    return Face(r_down=none, t_down=all_of_it, r_up=none, t_up=all_of_it)
+
+
 def roughened(smooth: Face, q_above: ComplexArray, q_below: ComplexArray, rough_nm: float, wavelength_nm: FloatArray) -> Face:
     """The face with an rms roughness: what is left in the specular beam, by scalar theory.
 
     Notes
     -----
     Reflection falls by exp(-2 (2 pi s q / L)^2) with q on the side of the light, transmission by
-    exp(-(2 pi s (q_above - q_below) / L)^2 / 2). (H. E. Bennett and J. O. Porteus, J. Opt. Soc. Am. 51, 123, 1961, for the
-    reflection; the transmission likewise from memory.)
+    exp(-(2 pi s (q_above - q_below) / L)^2 / 2). Both are means of the phase over Gaussian heights, so that a rough face never
+    gives back more than it gets. Where q is complex its modulus is taken: what fades is not to grow.
+
+    References
+    ----------
+    H. E. Bennett and J. O. Porteus, J. Opt. Soc. Am. 51, 123 (1961), for the reflection; the transmission likewise (from memory).
     """
     if rough_nm == 0:
         return smooth

@@ -1,17 +1,21 @@
 """Reflectance and transmittance of a stack as it is seen: any layers, angle, polarisation, cone and back."""
 
 from collections.abc import Iterator
+from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
+from numpy.typing import ArrayLike
 
-from sheenmap.arrays import FloatArray
-from sheenmap.optics.cone import directions
-from sheenmap.optics.film import crossing_share, film_powers, film_reflectance, with_back
-from sheenmap.optics.fold import Folded, fold
-from sheenmap.optics.fresnel import admittance, face, normal_index
-from sheenmap.optics.medium import index_of, layer_index
+from sheenmap.arrays import ComplexArray, FloatArray
+from sheenmap.optics.back import FarSide, far_side, through_back, with_back
+from sheenmap.optics.cone import Directions, directions
+from sheenmap.optics.film import both_sides, entered, reflected, reflected_and_slope, round_trips
+from sheenmap.optics.fold import Folded, fold_media, snell_invariant
+from sheenmap.optics.medium import Media, media_of
 from sheenmap.optics.stack import Stack, View
+
+PROBE_THICKNESSES, PROBE_WAVELENGTHS = 6, 12
 
 
 def reflectance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View) -> FloatArray:
@@ -22,6 +26,7 @@ def reflectance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArra
     thickness_nm : (T,) float
         Zero or more. Without a searched layer every row is the same.
     wavelength_nm : (W,) float
+        In vacuum.
     view : View
         Angle in the medium, aperture of the cone, polarisation.
 
@@ -29,94 +34,128 @@ def reflectance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArra
     -------
     (T, W) float
         0 to 1.
+
+    Raises
+    ------
+    ValueError
+        For a negative thickness, a wavelength that is not positive, or a medium that absorbs, seen at an angle.
     """
-    return np.asarray(reflectance_and_slope(stack, thickness_nm, wavelength_nm, view)[0])
+    thickness_nm, wavelength_nm = _checked(thickness_nm, wavelength_nm)
+    media = media_of(stack, wavelength_nm)
+    return _averaged(stack, media, thickness_nm, _directions(stack, media, thickness_nm, view))
 
 
 def reflectance_and_slope(
     stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View
 ) -> tuple[FloatArray, FloatArray]:
     """Reflectance (T, W) as ``reflectance`` gives it, and its derivative per nm of thickness (T, W)."""
-    thickness_nm = np.atleast_1d(np.asarray(thickness_nm, dtype=float))
+    thickness_nm, wavelength_nm = _checked(thickness_nm, wavelength_nm)
+    media = media_of(stack, wavelength_nm)
     total, slope = np.zeros((2, thickness_nm.size, wavelength_nm.size))
-    for weight, folded, angle_rad, polarisation in _seen(stack, thickness_nm, wavelength_nm, view):
-        r, r_slope = _one(stack, folded, thickness_nm, wavelength_nm, angle_rad, polarisation)
-        total += weight * r
-        slope += weight * r_slope
+    for beam in _beams(stack, media, _directions(stack, media, thickness_nm, view)):
+        for rows, round_trip in round_trips(thickness_nm, beam.folded.phase_per_nm):
+            r, r_slope = _reflected_and_slope(beam, round_trip)
+            total[rows] += beam.weight * r
+            slope[rows] += beam.weight * r_slope
     return total, slope
 
 
 def bare_reflectance(stack: Stack, wavelength_nm: FloatArray, view: View) -> FloatArray:
-    """Reflectance (W,) of a stack without a searched layer."""
+    """Reflectance (W,) of a stack without a searched layer.
+
+    Raises
+    ------
+    ValueError
+        For a stack with a searched layer, and as ``reflectance`` does.
+    """
     if stack.searched is not None:
         raise ValueError("the stack has a searched layer")
     return np.asarray(reflectance(stack, np.zeros(1), wavelength_nm, view)[0])
 
 
 def transmittance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View) -> FloatArray:
-    """Share of the light (T, W) that enters the substrate; what is neither reflected nor here was absorbed.
+    """Share of the light (T, W) that enters the substrate or, where the stack has a back, that leaves through it.
 
-    Raises
-    ------
-    ValueError
-        For a stack with a back, whose light goes on.
+    What is neither reflected nor transmitted was absorbed, or scattered by rough faces. Arguments and errors are those of
+    ``reflectance``.
     """
-    if stack.back is not None:
-        raise ValueError("transmittance is into the substrate; the stack has a back")
-    thickness_nm = np.atleast_1d(np.asarray(thickness_nm, dtype=float))
+    thickness_nm, wavelength_nm = _checked(thickness_nm, wavelength_nm)
+    media = media_of(stack, wavelength_nm)
     total = np.zeros((thickness_nm.size, wavelength_nm.size))
-    for weight, folded, _, _ in _seen(stack, thickness_nm, wavelength_nm, view):
-        total += weight * film_powers(folded, thickness_nm).t
-    return np.asarray(total)
+    for beam in _beams(stack, media, _directions(stack, media, thickness_nm, view)):
+        for rows, round_trip in round_trips(thickness_nm, beam.folded.phase_per_nm):
+            film = both_sides(beam.folded, round_trip)
+            through = entered(beam.folded, film) if beam.far is None else through_back(beam.folded, film, beam.far)
+            total[rows] += beam.weight * through
+    return total
 
 
-def _seen(
-    stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View
-) -> Iterator[tuple[float, Folded, float, Literal["s", "p"]]]:
-    """Weight, folded stack, angle and polarisation of everything that the lens takes in."""
-    seen = directions(view, _phase_span(stack, thickness_nm, wavelength_nm) if view.aperture > 0 else 0.0)
-    at_normal = seen.angle_rad.size == 1 and seen.angle_rad[0] == 0
-    for angle_rad, weight_s, weight_p in zip(seen.angle_rad, seen.s, seen.p):
-        if at_normal:
-            yield 1.0, fold(stack, wavelength_nm, 0.0, "s"), 0.0, "s"
+@dataclass(frozen=True, kw_only=True, eq=False)
+class _Beam:
+    """One direction and polarisation: its weight, the stack as it meets it, and what lies behind."""
+
+    weight: float
+    folded: Folded
+    far: FarSide | None
+
+
+def _directions(stack: Stack, media: Media, thickness_nm: FloatArray, view: View) -> Directions:
+    probe_nm = np.linspace(thickness_nm.min(initial=0.0), thickness_nm.max(initial=0.0), PROBE_THICKNESSES)
+    some = np.unique(np.linspace(0, media.wavelength_nm.size - 1, PROBE_WAVELENGTHS).astype(int))
+    probed = Media(
+        wavelength_nm=media.wavelength_nm[some],
+        indices=tuple(index[some] for index in media.indices),
+        behind=None if media.behind is None else media.behind[some],
+    )
+    medium_index = float(np.median(media.indices[0].real))
+    return directions(view, medium_index, lambda tried: _averaged(stack, probed, probe_nm, tried))
+
+
+def _averaged(stack: Stack, media: Media, thickness_nm: FloatArray, seen: Directions) -> FloatArray:
+    total = np.zeros((thickness_nm.size, media.wavelength_nm.size))
+    for beam in _beams(stack, media, seen):
+        for rows, round_trip in round_trips(thickness_nm, beam.folded.phase_per_nm):
+            total[rows] += beam.weight * _reflected(beam, round_trip)
+    return total
+
+
+def _beams(stack: Stack, media: Media, seen: Directions) -> Iterator[_Beam]:
+    """Everything that the lens takes in; at normal incidence s and p are one."""
+    for angle_rad, weight_s, weight_p in zip(seen.angle_rad.tolist(), seen.s.tolist(), seen.p.tolist()):
+        if angle_rad == 0:
+            yield _beam(stack, media, weight_s + weight_p, 0.0, "s")
             continue
         if weight_s:
-            yield float(weight_s), fold(stack, wavelength_nm, float(angle_rad), "s"), float(angle_rad), "s"
+            yield _beam(stack, media, weight_s, angle_rad, "s")
         if weight_p:
-            yield float(weight_p), fold(stack, wavelength_nm, float(angle_rad), "p"), float(angle_rad), "p"
+            yield _beam(stack, media, weight_p, angle_rad, "p")
 
 
-def _phase_span(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray) -> float:
-    largest = float(thickness_nm.max(initial=0.0))
-    depth = sum(
-        np.max(layer_index(layer, wavelength_nm).real) * (largest if layer.thickness_nm is None else layer.thickness_nm)
-        for layer in stack.layers
-    )
-    return float(4 * np.pi * depth / wavelength_nm.min())
+def _beam(stack: Stack, media: Media, weight: float, angle_rad: float, polarisation: Literal["s", "p"]) -> _Beam:
+    folded = fold_media(stack, media, angle_rad, polarisation)
+    if stack.back is None or media.behind is None:
+        return _Beam(weight=weight, folded=folded, far=None)
+    sine, depth_nm = snell_invariant(media, angle_rad), stack.back.thickness_mm * 1e6
+    far = far_side(folded, media.behind, sine, polarisation, depth_nm=depth_nm, wavelength_nm=media.wavelength_nm)
+    return _Beam(weight=weight, folded=folded, far=far)
 
 
-def _one(
-    stack: Stack,
-    folded: Folded,
-    thickness_nm: FloatArray,
-    wavelength_nm: FloatArray,
-    angle_rad: float,
-    polarisation: Literal["s", "p"],
-) -> tuple[FloatArray, FloatArray]:
-    if stack.back is None and folded.lower is not None:
-        return film_reflectance(folded, thickness_nm)
-    powers = film_powers(folded, thickness_nm)
-    if stack.back is None:
-        return powers.r, powers.r_slope
-    behind = _far_face(stack, wavelength_nm, angle_rad, polarisation)
-    return with_back(powers, behind, crossing_share(folded, stack.back, wavelength_nm))
+def _reflected(beam: _Beam, round_trip: ComplexArray) -> FloatArray:
+    if beam.far is None:
+        return reflected(beam.folded, round_trip)
+    return with_back(beam.folded, both_sides(beam.folded, round_trip), beam.far)[0]
 
 
-def _far_face(stack: Stack, wavelength_nm: FloatArray, angle_rad: float, polarisation: Literal["s", "p"]) -> FloatArray:
-    """Reflectance (W,) of the far face from inside the substrate."""
-    if stack.back is None:
-        raise ValueError("the stack has no back")
-    sine = index_of(stack.medium, wavelength_nm).real * np.sin(angle_rad)
-    ends = [index_of(material, wavelength_nm) for material in (stack.substrate, stack.back.medium)]
-    inside, outside = (admittance(index, normal_index(index, sine), polarisation) for index in ends)
-    return np.asarray(np.abs(face(inside, outside).r_down) ** 2)
+def _reflected_and_slope(beam: _Beam, round_trip: ComplexArray) -> tuple[FloatArray, FloatArray]:
+    if beam.far is None:
+        return reflected_and_slope(beam.folded, round_trip)
+    return with_back(beam.folded, both_sides(beam.folded, round_trip), beam.far)
+
+
+def _checked(thickness_nm: ArrayLike, wavelength_nm: ArrayLike) -> tuple[FloatArray, FloatArray]:
+    thickness, wavelength = (np.atleast_1d(np.asarray(values, dtype=float)) for values in (thickness_nm, wavelength_nm))
+    if thickness.ndim != 1 or not np.all(np.isfinite(thickness) & (thickness >= 0)):
+        raise ValueError(f"thickness_nm must be (T,), finite and zero or more; shape {thickness.shape}")
+    if wavelength.ndim != 1 or not np.all(np.isfinite(wavelength) & (wavelength > 0)):
+        raise ValueError(f"wavelength_nm must be (W,), finite and positive; shape {wavelength.shape}")
+    return thickness, wavelength

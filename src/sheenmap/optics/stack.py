@@ -1,5 +1,6 @@
 """What light meets: layers, their stack, the back of a clear substrate, and the way it is looked at."""
 
+import math
 from dataclasses import dataclass
 from typing import Literal
 
@@ -36,6 +37,15 @@ class Layer:
     inclusion: Spectrum | None = None
     inclusion_volume: float = 0.0
 
+    def __post_init__(self) -> None:
+        if self.thickness_nm is not None and not 0 <= self.thickness_nm < math.inf:
+            raise ValueError(f"thickness_nm is {self.thickness_nm}; zero or more")
+        if not (self.index_scale > 0 and self.rough_nm >= 0 and 0 <= self.inclusion_volume <= 1):
+            raise ValueError(
+                f"index_scale {self.index_scale} (above 0), rough_nm {self.rough_nm} (zero or more), "
+                f"inclusion_volume {self.inclusion_volume} (0 to 1)"
+            )
+
 
 @dataclass(frozen=True, kw_only=True)
 class Back:
@@ -43,6 +53,10 @@ class Back:
 
     medium: Spectrum
     thickness_mm: float
+
+    def __post_init__(self) -> None:
+        if not 0 < self.thickness_mm < math.inf:
+            raise ValueError(f"thickness_mm is {self.thickness_mm}; more than 0")
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -59,6 +73,8 @@ class Stack:
     substrate_rough_nm: float = 0.0
 
     def __post_init__(self) -> None:
+        if self.substrate_rough_nm < 0:
+            raise ValueError(f"substrate_rough_nm is {self.substrate_rough_nm}; zero or more")
         if sum(layer.thickness_nm is None for layer in self.layers) > 1:
             raise ValueError("more than one layer is searched")
 
@@ -72,9 +88,21 @@ class Stack:
 class View:
     """How the stack is lit and seen.
 
-    Angle of incidence in the medium, numerical aperture of the evenly filled cone about it, polarisation.
+    Parameters
+    ----------
+    angle_deg : float
+        Of incidence, in the medium; 0 up to, not including, 90.
+    aperture : float
+        Numerical aperture, 0 to 1, of the evenly filled cone about that direction: the medium's index times the sine of the
+        cone's half angle. What of the cone would come from below the film's plane is left out.
+    polarisation : {"none", "s", "p"}
+        Against the plane of the cone's axis and the film's normal. At angle 0 that plane is any.
     """
 
     angle_deg: float = 0.0
     aperture: float = 0.0
     polarisation: Polarisation = "none"
+
+    def __post_init__(self) -> None:
+        if not (0 <= self.angle_deg < 90 and 0 <= self.aperture <= 1):
+            raise ValueError(f"angle_deg {self.angle_deg} (0 up to, not including, 90), aperture {self.aperture} (0 to 1)")
