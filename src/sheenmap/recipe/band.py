@@ -11,6 +11,7 @@ from sheenmap.spectra import sample
 
 VISIBLE_NM = (400.0, 700.0)
 NARROWEST_NM = 10.0  # of what lamp and camera share, where the recipe allows less than the visible
+TAIL = 1e-3  # of a channel's power; reflectance held over a tail is off by a tenth at most: 1e-4, where 5e-3 is the usual doubt
 DARKEST_BLANK = 1e-6  # of a perfect mirror; below, dividing by the blank makes no sense
 CHANNELS = ("red", "green", "blue")
 HOLDS_ENDS = "allow_extrapolation = true holds the end values"
@@ -58,14 +59,15 @@ def _narrow(shot: Shot, prefix: str, *, holds_ends: bool) -> Fault:
 
 
 def _powered_nm(shot: Shot, shared: tuple[float, float]) -> tuple[float, float] | str:
-    """Where light times response is not zero in any channel; or the name of a channel in which it is zero everywhere."""
+    """Where light times response lies, but for ``TAIL`` of it at each end; or the name of a channel that sees nothing."""
     at_nm = np.linspace(*shared, max(2, round(shared[1] - shared[0]) + 1))
-    power = sample(shot.light, at_nm) * sample(shot.camera.response, at_nm) > 0
-    dark = ~power.any(axis=-1)
+    power = np.cumsum(sample(shot.light, at_nm) * sample(shot.camera.response, at_nm), axis=-1)
+    dark = ~(power[:, -1] > 0)
     if dark.any():
         return CHANNELS[int(np.argmax(dark))]
-    lit = np.flatnonzero(power.any(axis=0))
-    return float(at_nm[lit[0]]), float(at_nm[lit[-1]])
+    shares = power / power[:, -1:]
+    first, last = (shares > TAIL).argmax(axis=-1), (shares >= 1 - TAIL).argmax(axis=-1)
+    return float(at_nm[first.min()]), float(at_nm[last.max()])
 
 
 def _too_narrow(curve: NamedCurve, band: tuple[float, float]) -> Fault:

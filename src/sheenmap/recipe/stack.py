@@ -13,7 +13,7 @@ from sheenmap.spectra import Spectrum
 THICKEST_SEARCH_NM = 20_000.0
 THICKEST_NM, THICKEST_MM = 1e6, 1000.0
 ROUGHEST_NM = 200.0
-CLEAR_K = 1e-9  # a medium with more is one that absorbs
+CLEAR_K = 1e-3  # water, alcohols and oils stay below 1e-4; at an angle the optics takes no medium that absorbs more
 PLAIN = Quantity(value=1.0)
 
 
