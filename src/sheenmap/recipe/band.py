@@ -19,25 +19,32 @@ HOLDS_ENDS = "allow_extrapolation = true holds the end values"
 
 def band_faults(shots: tuple[Shot, ...], curves: list[NamedCurve], *, holds_ends: bool) -> list[Fault]:
     """What is too narrow or too dark in any of the photographs; ``holds_ends`` is the recipe's allow_extrapolation."""
-    faults = [fault for k, shot in enumerate(shots) for fault in _of_shot(shot, curves, _prefix(k), holds_ends=holds_ends)]
-    return list(dict.fromkeys(faults))
+    faults, bands = [], []
+    for k, shot in enumerate(shots):
+        prefix = "" if k == 0 else f"shot[{k - 1}]."
+        band = _band(shot, prefix, holds_ends=holds_ends)
+        if isinstance(band, Fault):
+            faults.append(band)
+        else:
+            bands.append(band)
+            faults.extend(_dark_blank(shot, prefix))
+    if bands and not holds_ends:
+        whole = min(low for low, _ in bands), max(high for _, high in bands)
+        faults.extend(_too_narrow(curve, whole) for curve in curves if not curve.spectrum.covers(*whole))
+    return faults
 
 
-def _prefix(k: int) -> str:
-    return "" if k == 0 else f"shot[{k - 1}]."
-
-
-def _of_shot(shot: Shot, curves: list[NamedCurve], prefix: str, *, holds_ends: bool) -> list[Fault]:
+def _band(shot: Shot, prefix: str, *, holds_ends: bool) -> tuple[float, float] | Fault:
+    """Where lamp and camera have power, in nm, or why they are no pair."""
     shared = band_nm(shot.light, shot.camera.response)
     narrow = shared[1] - shared[0] < NARROWEST_NM if holds_ends else shared[0] > VISIBLE_NM[0] or shared[1] < VISIBLE_NM[1]
     if narrow:
-        return [_narrow(shot, prefix, holds_ends=holds_ends)]
+        return _narrow(shot, prefix, holds_ends=holds_ends)
     powered = _powered_nm(shot, shared)
     if isinstance(powered, str):
         found, allowed = f"the camera's {powered} sees nothing of this light", "power in each of red, green and blue"
-        return [Fault(key=f"{prefix}light.spectrum", found=found, allowed=allowed)]
-    faults = [] if holds_ends else [_too_narrow(curve, powered) for curve in curves if not curve.spectrum.covers(*powered)]
-    return faults + _dark_blank(shot, prefix)
+        return Fault(key=f"{prefix}light.spectrum", found=found, allowed=allowed)
+    return powered
 
 
 def _narrow(shot: Shot, prefix: str, *, holds_ends: bool) -> Fault:

@@ -52,7 +52,7 @@ def read_stack(
     read = [layer.layer for layer in layers if layer.layer is not None]
     ranged = next((layer for layer in layers if layer.search_nm is not None), None)
     stack = None
-    if above is not None and substrate is not None and sum(layer.thickness_nm is None for layer in read) <= 1:
+    if above is not None and substrate is not None and sum(layer.thickness_nm is None for layer in read) <= searched:
         stack = Stack(medium=above, layers=tuple(read), substrate=substrate, back=back, substrate_rough_nm=rough_nm)
     if ranged is None:
         return ReadStack(stack=stack)

@@ -4,7 +4,6 @@ from pathlib import Path
 
 from sheenmap.optics import Polarisation
 from sheenmap.recipe.files import Folder
-from sheenmap.recipe.quantity import read_quantity
 from sheenmap.recipe.reader import Reader
 from sheenmap.recipe.types import Quantity, ViewSetup
 
@@ -47,17 +46,24 @@ def _place(reader: Reader) -> tuple[float, float, float] | None:
 
 def _angle(reader: Reader, folder: Folder, base: ViewSetup) -> tuple[Quantity, Path | None, tuple[float, float, float] | None]:
     """Angle, its picture, and the lens's place: those of ``base`` unless the table has an angle of its own."""
-    value = reader.table.get("angle_deg")
-    if isinstance(value, dict) and "photo" in value:
+    if "angle_deg" not in reader.table:
         reader.raw("angle_deg")
-        return (*_angle_photo(Reader(value, reader.name("angle_deg"), reader.faults), folder), None)
-    angle = read_quantity(reader, "angle_deg", base.angle_deg, low=0.0, high=90.0, largest_u=LARGEST_ANGLE_U, open_high=True)
-    return (angle, base.angle_photo, base.camera_mm) if value is None else (angle, None, None)
+        return base.angle_deg, base.angle_photo, base.camera_mm
+    if isinstance(reader.table["angle_deg"], dict):
+        return (*_angle_table(reader.table_of("angle_deg"), folder, base), None)
+    return Quantity(value=reader.number("angle_deg", 0.0, low=0.0, high=90.0, open_high=True)), None, None
 
 
-def _angle_photo(reader: Reader, folder: Folder) -> tuple[Quantity, Path | None]:
+def _angle_table(reader: Reader | None, folder: Folder, base: ViewSetup) -> tuple[Quantity, Path | None]:
+    """{ value, u }, or { photo, u } with one float for each pixel."""
+    if reader is None:
+        return base.angle_deg, base.angle_photo
+    value = reader.number("value", 0.0, low=0.0, high=90.0, open_high=True)
     text = reader.text("photo", None)
     path = None if text is None else folder.path(reader, "photo", text)
     u = reader.number("u", 0.0, low=0.0, high=LARGEST_ANGLE_U)
+    if ("value" in reader.table) == ("photo" in reader.table):
+        found = "both value and photo" if "value" in reader.table else "nothing"
+        reader.fault("value", found, "value, or photo with one float for each pixel")
     reader.finish()
-    return Quantity(value=0.0, u=u), path
+    return Quantity(value=value, u=u), path
