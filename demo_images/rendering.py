@@ -27,7 +27,7 @@ def index(name: str) -> NDArray[np.complex128]:
     """The catalogue's index as n + ik (W,)."""
     if name == "air":
         return np.ones(WAVELENGTH_NM.size, complex)
-    return np.conj(sample(material(name), WAVELENGTH_NM, interpolation="monotone cubic")).astype(complex)
+    return np.conj(np.asarray(sample(material(name), WAVELENGTH_NM, interpolation="monotone cubic"), dtype=np.complex128))
 
 
 def spectra(stack: dict[str, Any], thickness_nm: Array, angle_deg: float = 0.0) -> Array:
@@ -110,7 +110,8 @@ class Sensor:
         electrons = electrons + rng.normal(0, self.read_noise_e / np.sqrt(frames), light.shape)
         level = electrons / self.full_well_e + self.black
         encoded = np.clip(_srgb(level) if self.srgb else level, 0, 1)
-        return np.rint(encoded * (2**self.bits - 1)).astype(np.uint16 if self.bits == 16 else np.uint8)
+        codes: NDArray[Any] = np.rint(encoded * (2**self.bits - 1)).astype(np.uint16 if self.bits == 16 else np.uint8)
+        return codes
 
 
 def _srgb(level: Array) -> Array:
@@ -165,4 +166,5 @@ def grid(size: tuple[int, int]) -> tuple[Array, Array]:
 def smooth_field(size: tuple[int, int], rng: np.random.Generator, scale: float) -> Array:
     """A random field (H, W) of mean 0 and standard deviation 1 whose features are ``scale`` of the longer side."""
     field: Array = gaussian_filter(rng.normal(size=size), scale * max(size) / 2, mode="reflect")
-    return (field - field.mean()) / field.std()
+    spread: Array = (field - field.mean()) / field.std()
+    return spread
