@@ -12,7 +12,6 @@ from sheenmap.lookup import Table
 LARGEST_GAP = 40.0  # chi-square above the best beyond which a thickness is no candidate (odds of e^-20)
 KEPT = 10
 CHUNK = 2048
-PAIRS = ((0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2))
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -65,9 +64,13 @@ def _by_angle(table: Table, angle_deg: NDArray[np.floating] | None, count: int) 
 
 
 def _features(entries: FloatArray) -> FloatArray:
-    """(9, T): the products and values of the table's signal in which chi-square is linear."""
-    products = [entries[:, i] * entries[:, j] * (1 if i == j else 2) for i, j in PAIRS]
+    """(P, T): the products and values of the table's signal in which chi-square is linear."""
+    products = [entries[:, i] * entries[:, j] * (1 if i == j else 2) for i, j in _pairs(entries.shape[1])]
     return np.stack([*products, *(-2 * entries.T)])
+
+
+def _pairs(channels: int) -> list[tuple[int, int]]:
+    return [(i, j) for i in range(channels) for j in range(i, channels)]
 
 
 def _chi_square_over_table(
@@ -76,7 +79,7 @@ def _chi_square_over_table(
     signal = signal.astype(float)
     precision = np.linalg.inv(covariance(variance, correlation, signal, doubts))
     weighted = np.einsum("nij,nj->ni", precision, signal)
-    coefficients = np.column_stack([*(precision[:, i, j] for i, j in PAIRS), weighted])
+    coefficients = np.column_stack([*(precision[:, i, j] for i, j in _pairs(signal.shape[1])), weighted])
     return np.asarray(coefficients @ features + np.einsum("ni,ni->n", weighted, signal)[:, None])
 
 

@@ -12,7 +12,7 @@ from sheenmap.flags import AMBIGUOUS, AT_LIMIT, BY_CONTINUITY, DARK, OFF_CURVE, 
 from sheenmap.inversion.blocks import Blocks, gather_blocks
 from sheenmap.inversion.candidates import find_candidates
 from sheenmap.inversion.contradiction import is_contradicted
-from sheenmap.inversion.likelihood import Doubts
+from sheenmap.inversion.likelihood import Doubts, chi_square_limit
 from sheenmap.inversion.local import Local, around, fit_locally, pixels_at
 from sheenmap.inversion.posterior import posterior_near
 from sheenmap.inversion.reference import Planes, fit_planes
@@ -20,7 +20,7 @@ from sheenmap.inversion.regions import DECIDED_GAP
 from sheenmap.inversion.residuals import with_residual_noise
 from sheenmap.inversion.settle import Settled, settle
 from sheenmap.inversion.shading import estimate_shading
-from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE, split_strays
+from sheenmap.inversion.strays import OFF_CURVE_FALSE_ALARMS, SURELY_OFF_FALSE_ALARMS, split_strays
 from sheenmap.lookup import Table
 
 WEAK_SIGMA_NM = 5.0
@@ -76,9 +76,10 @@ def invert(
             blocks, settled, planes = _settled_planes(signal, usable, angle_deg, table, doubts)
     local = fit_locally(signal, usable, angle_deg, table, planes, doubts)
     thickness_nm, sigma_nm, chi_square = local.thickness_nm, local.sigma_nm, local.chi_square
-    stray = usable & ~(chi_square <= OFF_CURVE_CHI_SQUARE)
+    channels = table.signal.shape[-1]
+    stray = usable & ~(chi_square <= chi_square_limit(OFF_CURVE_FALSE_ALARMS, channels))
     elsewhere = _fit_elsewhere(signal, np.flatnonzero(stray), angle_deg, table, doubts)
-    _flag_strays(flags, stray, elsewhere, _steps(local.block, settled), thickness_nm, sigma_nm, chi_square)
+    _flag_strays(flags, stray, elsewhere, _steps(local.block, settled), channels, thickness_nm, sigma_nm, chi_square)
     _flag_order(flags, local, settled, stray)
     _flag_values(flags, thickness_nm, sigma_nm, table)
     contradicted = is_contradicted(blocks, settled.region)
@@ -156,12 +157,13 @@ def _steps(block: NDArray[np.intp], settled: Settled) -> BoolArray:
 
 def _flag_strays(
     flags: FlagArray, stray: BoolArray, elsewhere: _Elsewhere, at_step: BoolArray,
+    channels: int,
     thickness_nm: FloatArray, sigma_nm: FloatArray, chi_square: FloatArray,
 ) -> None:  # fmt: skip
     on_curve = np.zeros(stray.shape, bool)
-    on_curve.flat[elsewhere.rows] = elsewhere.chi_square <= OFF_CURVE_CHI_SQUARE
+    on_curve.flat[elsewhere.rows] = elsewhere.chi_square <= chi_square_limit(OFF_CURVE_FALSE_ALARMS, channels)
     severity = np.where(stray, np.where(np.isfinite(chi_square), chi_square, 1e9), 0.0)
-    defect, film = split_strays(stray, on_curve, severity, at_step)
+    defect, film = split_strays(stray, on_curve, severity, at_step, chi_square_limit(SURELY_OFF_FALSE_ALARMS, channels))
     flags[(defect | (stray & ~film)) & ((flags & np.uint16(OUTSIDE.mask)) == 0)] |= np.uint16(OFF_CURVE.mask)
     moved = film.flat[elsewhere.rows]
     rows = elsewhere.rows[moved]

@@ -9,10 +9,28 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import chdtri
 
 from sheenmap.arrays import FloatArray
 
 Floats = NDArray[np.floating]
+CHANNELS = 3  # of one shot; several shots stand one after the other
+
+
+def shots(channels: int) -> list[slice]:
+    """The channels of each shot."""
+    return [slice(start, start + CHANNELS) for start in range(0, channels, CHANNELS)]
+
+
+def same_shot(channels: int) -> FloatArray:
+    """(C, C): 1 where two channels belong to one shot, and so share its brightness, else 0."""
+    shot = np.arange(channels) // CHANNELS
+    return np.asarray(shot[:, None] == shot, dtype=float)
+
+
+def chi_square_limit(false_alarms: float, channels: int) -> float:
+    """Chi-square that a film exceeds with the probability ``false_alarms``; one of the channels' freedoms is thickness."""
+    return float(chdtri(channels - 1, false_alarms))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -40,10 +58,11 @@ class Doubts:
 
 
 def covariance(variance: Floats, correlation: FloatArray, signal: Floats, doubts: Doubts) -> FloatArray:
-    """C (N, 3, 3) of signals (N, 3) with noise ``variance`` (N, 3), all doubts included."""
+    """C (N, C, C) of signals (N, C) with noise ``variance`` (N, C), all doubts included."""
     sd = np.sqrt(variance)
     result = sd[:, :, None] * correlation * sd[:, None, :]
-    result = result + doubts.brightness_u**2 * signal[:, :, None] * signal[:, None, :]
+    alike = doubts.brightness_u**2 * same_shot(signal.shape[1])
+    result = result + alike * signal[:, :, None] * signal[:, None, :]
     diagonal = np.arange(signal.shape[1])
     result[:, diagonal, diagonal] += (doubts.colour_u * signal) ** 2
     return np.asarray(result, dtype=float)
@@ -66,25 +85,28 @@ class Whitener:
 
     def __init__(self, variance: Floats, correlation: FloatArray, shading_u: float) -> None:
         self._inverse_sd = 1.0 / np.sqrt(variance)
-        self._mix = None if np.array_equal(correlation, np.eye(3)) else np.linalg.inv(np.linalg.cholesky(correlation)).T
+        is_white = np.array_equal(correlation, np.eye(len(correlation)))
+        self._mix = None if is_white else np.linalg.inv(np.linalg.cholesky(correlation)).T
         self._shading_u = shading_u
 
     def white(self, vectors: Floats) -> FloatArray:
-        """Vectors (N, 3) in units of their noise."""
+        """Vectors (N, C) in units of their noise."""
         scaled = vectors * self._inverse_sd
         return np.asarray(scaled if self._mix is None else scaled @ self._mix)
 
     def fit(self, residual: Floats, expected: Floats, slope: Floats) -> Fit:
-        """Chi-square, pull and information of residual (N, 3) about the expected signal with its slope per nm."""
+        """Chi-square, pull and information of residual (N, C) about the expected signal with its slope per nm."""
         r, f, g = self.white(residual), self.white(expected), self.white(slope)
-        free = 1.0 / (self._shading_u**-2 + _dot(f, f)) if self._shading_u > 0 else np.zeros(len(r))
-        rf, gf = _dot(r, f), _dot(g, f)
-        information = np.maximum(_dot(g, g) - gf * gf * free, 1e-12)
-        return Fit(
-            chi_square=_dot(r, r) - rf * rf * free,
-            pull=(_dot(g, r) - gf * rf * free) / information,
-            information=information,
-        )
+        chi_square, pull, information = _dot(r, r), _dot(g, r), _dot(g, g)
+        if self._shading_u > 0:
+            for shot in shots(r.shape[-1]):
+                free = 1.0 / (self._shading_u**-2 + _dot(f[:, shot], f[:, shot]))
+                rf, gf = _dot(r[:, shot], f[:, shot]), _dot(g[:, shot], f[:, shot])
+                chi_square = chi_square - rf * rf * free
+                pull = pull - gf * rf * free
+                information = information - gf * gf * free
+        information = np.maximum(information, 1e-12)
+        return Fit(chi_square=chi_square, pull=pull / information, information=information)
 
 
 def _dot(a: FloatArray, b: FloatArray) -> FloatArray:

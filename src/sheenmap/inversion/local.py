@@ -31,8 +31,8 @@ class Local:
 def pixels_at(signal: Signal, angle_deg: NDArray[np.floating] | None, rows: NDArray[np.intp]) -> Pixels:
     """The pixels with flat numbers ``rows``."""
     return Pixels(
-        signal=signal.values.reshape(-1, 3)[rows].astype(float),
-        variance=signal.variance.reshape(-1, 3)[rows].astype(float),
+        signal=signal.values.reshape(-1, signal.values.shape[-1])[rows].astype(float),
+        variance=signal.variance.reshape(-1, signal.variance.shape[-1])[rows].astype(float),
         correlation=signal.correlation,
         angle_deg=None if angle_deg is None else angle_deg.ravel()[rows].astype(float),
     )

@@ -17,7 +17,7 @@ from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
 from sheenmap.arrays import BoolArray, FloatArray, chunks
-from sheenmap.inversion.likelihood import Doubts
+from sheenmap.inversion.likelihood import Doubts, same_shot
 from sheenmap.inversion.order import link_cost
 from sheenmap.lookup import Table, evaluate
 
@@ -118,13 +118,15 @@ def _cost(
     rows: NDArray[np.intp], thickness_nm: FloatArray, shift_nm: FloatArray, evidence: Evidence, table: Table, doubts: Doubts
 ) -> FloatArray:
     """Chi-square (D,) of one region's blocks moved by each shift; inf where most of them leave the table."""
-    prior = np.linalg.inv(np.eye(3) * max(doubts.colour_u, 1e-5) ** 2 + doubts.brightness_u**2)
+    channels = table.signal.shape[-1]
+    common = np.eye(channels) * max(doubts.colour_u, 1e-5) ** 2 + doubts.brightness_u**2 * same_shot(channels)
+    prior = np.linalg.inv(common)
     cost = np.full(shift_nm.size, np.inf)
     for part in chunks(shift_nm.size, max(1, CHUNK // rows.size)):
         place_nm = thickness_nm + shift_nm[part, None]
         inside = (place_nm >= table.thickness_nm[0]) & (place_nm <= table.thickness_nm[-1])
         angle = None if evidence.angle_deg is None else np.tile(evidence.angle_deg[rows], place_nm.shape[0])
-        expected, slope = (v.reshape(*place_nm.shape, 3) for v in evaluate(table, place_nm.ravel(), angle))
+        expected, slope = (v.reshape(*place_nm.shape, channels) for v in evaluate(table, place_nm.ravel(), angle))
         square, pull, fit = _sums(evidence.signal[rows], evidence.precision[rows], expected, slope)
         solved = np.linalg.solve(fit + prior, pull[..., None])[..., 0]
         cost[part] = np.where(2 * inside.sum(axis=1) > rows.size, square - np.einsum("dc,dc->d", pull, solved), np.inf)

@@ -10,6 +10,7 @@ from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import chdtr, chdtri
 
 from sheenmap.arrays import FloatArray
 from sheenmap.camera import Signal
@@ -18,8 +19,6 @@ from sheenmap.lookup import Table, evaluate
 
 ROUNDS = 12
 TRIMMED = 0.99  # of the pixels, those with the least residual; the rest may be dirt
-MEDIAN_CHI_SQUARE = 1.386  # of two degrees of freedom
-TRIMMED_MEAN = 0.953  # mean of a chi-square variable of two degrees of freedom over its lowest 99 %, relative to its mean of 2
 
 
 def with_residual_noise(signal: Signal, pixels: Pixels, thickness_nm: FloatArray, table: Table) -> Signal:
@@ -41,6 +40,11 @@ def with_residual_noise(signal: Signal, pixels: Pixels, thickness_nm: FloatArray
     )
 
 
+def _trimmed_mean(freedoms: int) -> float:
+    """Mean of a chi-square variable over its lowest ``TRIMMED``, relative to its whole mean."""
+    return float(chdtr(freedoms + 2, chdtri(freedoms, 1 - TRIMMED)) / TRIMMED)
+
+
 def _scale(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> float:
     """A first scale of the whole covariance.
 
@@ -48,7 +52,7 @@ def _scale(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> float
     the others by the residuals, which see all of what a JPEG does to them. The unseen direction gets the geometric mean.
     """
     _, chi_square, _ = _left_over(matrix, residual, along)
-    return float(np.sqrt(np.median(chi_square) / MEDIAN_CHI_SQUARE))
+    return float(np.sqrt(np.median(chi_square) / chdtri(len(matrix) - 1, 0.5)))
 
 
 def _left_over(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
@@ -64,5 +68,5 @@ def _updated(matrix: FloatArray, residual: FloatArray, along: FloatArray) -> Flo
     left, chi_square, information = _left_over(matrix, residual, along)
     kept: NDArray[np.bool_] = chi_square <= np.quantile(chi_square, TRIMMED)
     taken = np.einsum("n,ni,nj->ij", 1 / information[kept], along[kept], along[kept])
-    seen = np.einsum("ni,nj->ij", left[kept], left[kept]) / TRIMMED_MEAN
+    seen = np.einsum("ni,nj->ij", left[kept], left[kept]) / _trimmed_mean(len(matrix) - 1)
     return np.asarray((seen + taken) / kept.sum())

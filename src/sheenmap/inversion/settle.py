@@ -9,7 +9,7 @@ from scipy.ndimage import distance_transform_edt
 from sheenmap.arrays import BoolArray, FloatArray
 from sheenmap.inversion.blocks import Blocks
 from sheenmap.inversion.candidates import KEPT, Candidates, find_candidates
-from sheenmap.inversion.likelihood import Doubts, covariance
+from sheenmap.inversion.likelihood import Doubts, chi_square_limit, covariance
 from sheenmap.inversion.order import choose_order, filled, link_width_nm, no_trend, trend_of
 from sheenmap.inversion.regions import (
     DECIDED_GAP,
@@ -22,7 +22,7 @@ from sheenmap.inversion.regions import (
     label_regions,
     neighbours,
 )
-from sheenmap.inversion.strays import OFF_CURVE_CHI_SQUARE
+from sheenmap.inversion.strays import OFF_CURVE_FALSE_ALARMS
 from sheenmap.lookup import Table, evaluate
 
 ROUNDS = 2
@@ -79,7 +79,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     even = np.flatnonzero(blocks.even)
     found = _candidates(blocks, even, blocks.variance, correlation, table, doubts)
     known = np.zeros(shape, bool)
-    known.flat[even] = found.chi_square[:, 0] < OFF_CURVE_CHI_SQUARE
+    known.flat[even] = found.chi_square[:, 0] < chi_square_limit(OFF_CURVE_FALSE_ALARMS, blocks.signal.shape[-1])
     places, costs = _gridded(found, even, known)
     single = _candidates(blocks, even, pixel_variance, correlation, table, doubts)
     rivals_nm, rival_cost = _gridded(single, even, known)
@@ -225,7 +225,8 @@ def _candidates(
     blocks: Blocks, rows: NDArray[np.intp], variance: FloatArray, correlation: FloatArray, table: Table, doubts: Doubts
 ) -> Candidates:
     angle = None if blocks.angle_deg is None else blocks.angle_deg.ravel()[rows]
-    return find_candidates(blocks.signal.reshape(-1, 3)[rows], variance.reshape(-1, 3)[rows], correlation, table, doubts, angle)
+    signal, noise = (array.reshape(-1, array.shape[-1])[rows] for array in (blocks.signal, variance))
+    return find_candidates(signal, noise, correlation, table, doubts, angle)
 
 
 def _gridded(found: Candidates, rows: NDArray[np.intp], known: BoolArray) -> tuple[FloatArray, FloatArray]:
@@ -243,9 +244,9 @@ def _without_data(costs: FloatArray, known: BoolArray, nearest: tuple[NDArray[np
 
 def _evidence(blocks: Blocks, correlation: FloatArray, *, shading_u: float = 0.0) -> Evidence:
     """What the blocks know, by noise alone or with a shading of their own each."""
-    signal = blocks.signal.reshape(-1, 3)
+    signal, variance = (array.reshape(-1, array.shape[-1]) for array in (blocks.signal, blocks.variance))
     doubts = Doubts(shading_u=shading_u, level_u=0, colour_u=0)
-    noise = covariance(np.maximum(blocks.variance.reshape(-1, 3), 1e-12), correlation, signal, doubts)
+    noise = covariance(np.maximum(variance, 1e-12), correlation, signal, doubts)
     return Evidence(
         signal=signal,
         precision=np.asarray(np.linalg.inv(noise), dtype=float),

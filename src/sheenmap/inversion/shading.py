@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from scipy.ndimage import gaussian_filter
 
 from sheenmap.arrays import BoolArray, FloatArray
+from sheenmap.inversion.likelihood import shots
 from sheenmap.inversion.regions import Evidence
 from sheenmap.lookup import Table, evaluate
 
@@ -32,7 +33,9 @@ def estimate_shading(thickness_nm: FloatArray, sure: BoolArray, evidence: Eviden
     noise = 1.0 / np.maximum(total * 4 * np.pi * SMOOTHED_BLOCKS**2, 1e-12)
     counted = sure & (total > np.quantile(total[sure], 0.1))
     variance = float(np.average(smooth[counted] ** 2 - noise[counted], weights=1.0 / (noise[counted] + LEAST_U**2)))
-    return float(np.clip(np.sqrt(max(variance, 0.0)), LEAST_U, MOST_U))
+    # The brightness seen is the mean of all shots', each with a shading of its own.
+    each = variance * len(shots(table.signal.shape[-1]))
+    return float(np.clip(np.sqrt(max(each, 0.0)), LEAST_U, MOST_U))
 
 
 def _brightness(

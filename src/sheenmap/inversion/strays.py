@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 
 from sheenmap.arrays import BoolArray, FloatArray
 
-OFF_CURVE_CHI_SQUARE = 13.8  # two degrees of freedom: one clean pixel in a thousand is called off the curve
-SURELY_OFF_CHI_SQUARE = 30.0  # one clean pixel in three million
+OFF_CURVE_FALSE_ALARMS = 1e-3  # clean pixels that are called off the curve; chi-square 13.8 for one shot
+SURELY_OFF_FALSE_ALARMS = 3e-7  # chi-square 30 for one shot
 SMALLEST_DEFECT = 3  # touching pixels; two neighbours by chance: one in a hundred thousand
 MARGIN = 2  # pixels around a defect whose light is partly the defect's
 LONGEST_SPECK = 10  # pixels; smaller objects that stand out of the film are specks, longer ones may be lines and steps
@@ -20,7 +20,7 @@ MOSTLY_ON_CURVE = 0.7
 
 
 def split_strays(
-    stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray, at_step: BoolArray
+    stray: BoolArray, on_curve: BoolArray, chi_square: FloatArray, at_step: BoolArray, surely_off: float
 ) -> tuple[BoolArray, BoolArray]:
     """Defects and film among the pixels (H, W) that do not continue their surroundings.
 
@@ -34,6 +34,8 @@ def split_strays(
         Of the best explanation.
     at_step : (H, W) bool
         Where film of one region meets another: strays there mix the light of both, and need no margin.
+    surely_off : float
+        Chi-square that not even a lone clean pixel reaches.
 
     Returns
     -------
@@ -48,7 +50,7 @@ def split_strays(
     worst = np.zeros(count)
     np.maximum.at(worst, label[stray], chi_square[stray])
     film = (extent >= LONGEST_SPECK) & (share_on >= MOSTLY_ON_CURVE)
-    defect = ~film & ((area >= SMALLEST_DEFECT) | (worst >= SURELY_OFF_CHI_SQUARE))
+    defect = ~film & ((area >= SMALLEST_DEFECT) | (worst >= surely_off))
     film[0] = defect[0] = False
     found = defect[label]
     return found | _grown(found & ~at_step), film[label] & on_curve

@@ -22,8 +22,10 @@ Listed = tuple[NDArray[np.float32], NDArray[np.float32]]
 
 
 def assemble(
-    recipe: Recipe, frames: Frames, region: Region, angle_deg: NDArray[np.float32] | None, table: Table,
+    recipe: Recipe, shots: tuple[Frames, ...], region: Region, angle_deg: NDArray[np.float32] | None, table: Table,
     inversion: Inversion, listed: Listed | None,
+    *,
+    words: tuple[str, ...] = (),
 ) -> Measurement:  # fmt: skip
     """The measurement that the arrays amount to."""
     signal, doubts = inversion.signal, inversion.doubts
@@ -38,13 +40,13 @@ def assemble(
     verdict = None
     if is_measured and recipe.tolerance is not None:
         verdict = judge_map(recipe, region, thickness_nm, sigma_nm, flags, readings, numbers, u_common_nm)
-    image, scale = preview(frames)
+    image, scale = preview(shots[0])
     return Measurement(
         title=recipe.title,
         thickness_nm=thickness_nm,
         sigma_nm=sigma_nm,
         flags=flags,
-        residual=(inversion.chi_square / 2).astype(np.float32),
+        residual=(inversion.chi_square / (table.signal.shape[-1] - 1)).astype(np.float32),
         preview=image,
         preview_scale=scale,
         region=region,
@@ -58,13 +60,13 @@ def assemble(
         verdict=verdict,
         budget=lines,
         u_common_nm=u_common_nm,
-        notes=notes(recipe, frames, table, inversion),
+        notes=(*words, *notes(recipe, shots, table, inversion)),
         history=(
             *signal.history,
             f"shading left after the blank: {100 * doubts.shading_u:.2f} % rms",
             f"table of {table.thickness_nm.size} thicknesses, wavelengths {table.wavelength_step_nm:g} nm apart",
         ),
-        provenance=_provenance(recipe, frames, inversion, doubts),
+        provenance=_provenance(recipe, shots, inversion, doubts),
     )
 
 
@@ -86,13 +88,13 @@ def _formulas(readings: tuple[SiteReading, ...], recipe: Recipe) -> dict[str, fl
     return {name: nonuniformity(values, name, target_nm=target_nm) for name in FORMULAS} if len(values) > 1 else {}
 
 
-def _provenance(recipe: Recipe, frames: Frames, inversion: Inversion, doubts: Doubts) -> dict[str, object]:
+def _provenance(recipe: Recipe, shots: tuple[Frames, ...], inversion: Inversion, doubts: Doubts) -> dict[str, object]:
     return {
         "sheenmap": __version__,
         "recipe": recipe.path.name,
         "recipe_sha256": recipe.digest,
         "recipe_text": recipe.text,
-        "pictures_sha256": frames.digests,
+        "pictures_sha256": {name: digest for shot in shots for name, digest in shot.digests.items()},
         "noise_spread": inversion.signal.spread,
         "shading_u": doubts.shading_u,
         "level_u": doubts.level_u,

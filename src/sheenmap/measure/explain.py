@@ -8,7 +8,7 @@ import numpy as np
 
 from sheenmap.errors import Fault, SettingsError
 from sheenmap.flags import FLAGS, is_blocked
-from sheenmap.inversion import pixel_candidates
+from sheenmap.inversion import chi_square_limit, pixel_candidates
 from sheenmap.lookup import evaluate
 from sheenmap.measure.measure import Road, travel
 from sheenmap.recipe import Recipe
@@ -101,12 +101,16 @@ def _lines(e: Explanation) -> list[str]:
         lines.append(f"  {word}: {e.thickness_nm:.2f} nm, standard uncertainty {e.sigma_nm:.2f} nm by noise and shading")
     else:
         lines.append("  no thickness was formed")
-    expected = e.expected or (None,) * len(CHANNELS)
-    for name, value, noise, model in zip(CHANNELS, e.signal, e.noise, expected):
+    expected = e.expected or (None,) * len(e.signal)
+    names = CHANNELS * (len(e.signal) // len(CHANNELS))
+    for name, value, noise, model in zip(names, e.signal, e.noise, expected):
         fitted = "" if model is None else f", table {model:.4f} ({(value - model) / noise:+.1f} sigma)"
         lines.append(f"  {name:<5} {value:.4f} of the blank, noise {noise:.4f}{fitted}")
     if e.chi_square is not None:
-        lines.append(f"  chi-square {e.chi_square:.1f} (two degrees of freedom; above 13.8 is off the curve)")
+        freedoms, limit = len(e.signal) - 1, chi_square_limit(1e-3, len(e.signal))
+        lines.append(
+            f"  chi-square {e.chi_square:.1f} ({freedoms} degrees of freedom; one clean pixel in 1000 is above {limit:.1f})"
+        )
     lines.append("  thicknesses that fit this pixel by itself:")
     lines += [f"    {c.thickness_nm:8.1f} nm   chi-square {c.chi_square:6.1f}   odds {c.odds:.2g}" for c in e.candidates] or [
         "    none"

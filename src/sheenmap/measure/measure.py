@@ -7,16 +7,14 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from sheenmap.camera import relative_signal
 from sheenmap.inversion import Doubts, Inversion, invert, list_candidates
-from sheenmap.lookup import Table, build_table
+from sheenmap.lookup import Table
 from sheenmap.measure.assemble import assemble
-from sheenmap.measure.frames import Frames, read_frames
-from sheenmap.measure.refuse import refuse_what_is_not_supported
+from sheenmap.measure.frames import Frames
 from sheenmap.measure.result import Measurement
-from sheenmap.optics import View
+from sheenmap.measure.shots import angles_of, read_shots, seen_signal, tabulated
 from sheenmap.recipe import Recipe
-from sheenmap.wafer import Region, locate, viewing_angle_deg
+from sheenmap.wafer import Region, locate
 
 Progress = Callable[[int, int], None]
 STAGES = 6
@@ -26,13 +24,14 @@ ASSUMED_SHADING_U = 0.003  # left after a good blank
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Road:
-    """Everything that the road passes: the pictures, the region, the table, and what the inverse makes of them."""
+    """Everything that the road passes: the pictures of each shot, the region, the table, and what the inverse makes of them."""
 
-    frames: Frames
+    shots: tuple[Frames, ...]
     region: Region
     angle_deg: NDArray[np.float32] | None
     table: Table
     inversion: Inversion
+    words: tuple[str, ...]
 
 
 def measure(photo: Path, recipe: Recipe, *, progress: Progress | None = None, with_candidates: bool = False) -> Measurement:
@@ -60,37 +59,25 @@ def measure(photo: Path, recipe: Recipe, *, progress: Progress | None = None, wi
     listed = None
     if with_candidates:
         listed = list_candidates(road.table, road.inversion, road.angle_deg)
-    measurement = assemble(recipe, road.frames, road.region, road.angle_deg, road.table, road.inversion, listed)
+    measurement = assemble(recipe, road.shots, road.region, road.angle_deg, road.table, road.inversion, listed, words=road.words)
     _tell(progress, STAGES)
     return measurement
 
 
 def travel(photo: Path, recipe: Recipe, *, progress: Progress | None = None) -> Road:
     """Go the road up to the inverse; ``measure`` and ``explain`` start from here."""
-    refuse_what_is_not_supported(recipe)
-    shot = recipe.shots[0]
-    frames = read_frames(photo, shot)
+    shots = read_shots(photo, recipe)
     _tell(progress, 1)
-    region = locate(recipe.region, frames.photo.values)
-    angle_deg = _angles(recipe, frames, region)
-    signal = relative_signal(frames.photo, frames.blank, frames.dark)
+    region = locate(recipe.region, shots[0].photo.values)
+    angle_deg = angles_of(recipe, shots, region)
+    signal, words = seen_signal(recipe, shots)
     _tell(progress, 2)
-    table = build_table(
-        recipe.stack, recipe.search_nm, light=shot.light, response=shot.camera.response, blank=shot.camera.blank_surface,
-        view=View(angle_deg=shot.view.angle_deg.value, aperture=shot.view.aperture, polarisation=shot.view.polarisation),
-        angle_range_deg=None if angle_deg is None else _range(angle_deg, region),
-    )  # fmt: skip
+    table = tabulated(recipe, region, angle_deg)
     _tell(progress, 3)
-    inversion = invert(
-        signal,
-        table,
-        region.inside,
-        angle_deg=angle_deg,
-        doubts=doubts_of(recipe),
-        shading_is_known=shot.camera.shading_u is not None,
-    )
+    is_known = recipe.shots[0].camera.shading_u is not None
+    inversion = invert(signal, table, region.inside, angle_deg=angle_deg, doubts=doubts_of(recipe), shading_is_known=is_known)
     _tell(progress, 5)
-    return Road(frames=frames, region=region, angle_deg=angle_deg, table=table, inversion=inversion)
+    return Road(shots=shots, region=region, angle_deg=angle_deg, table=table, inversion=inversion, words=words)
 
 
 def doubts_of(recipe: Recipe) -> Doubts:
@@ -101,16 +88,6 @@ def doubts_of(recipe: Recipe) -> Doubts:
         level_u=camera.level_u,
         colour_u=ASSUMED_COLOUR_U if camera.colour_u is None else camera.colour_u,
     )
-
-
-def _angles(recipe: Recipe, frames: Frames, region: Region) -> NDArray[np.float32] | None:
-    camera_mm = recipe.shots[0].view.camera_mm
-    return frames.angle_deg if camera_mm is None else viewing_angle_deg(region, camera_mm)
-
-
-def _range(angle_deg: NDArray[np.float32], region: Region) -> tuple[float, float]:
-    seen = angle_deg[region.inside]
-    return float(seen.min()), float(seen.max())
 
 
 def _tell(progress: Progress | None, done: int) -> None:

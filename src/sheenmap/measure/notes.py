@@ -38,9 +38,9 @@ def _blame(flags: FlagArray, region: Region) -> str:
     return f"{worst.name} on {100 * shares[worst]:.0f} %: {BLAME[worst]}"
 
 
-def notes(recipe: Recipe, frames: Frames, table: Table, inversion: Inversion) -> tuple[str, ...]:
+def notes(recipe: Recipe, shots: tuple[Frames, ...], table: Table, inversion: Inversion) -> tuple[str, ...]:
     """Findings and hints, each with its evidence."""
-    found = [f"{frames.picture.path.name} {note}" for note in frames.notes]
+    found = [f"{shot.picture.path.name} {note}" for shot in shots for note in shot.notes]
     camera = recipe.shots[0].camera
     if camera.colour_u is None:
         found.append(

@@ -10,6 +10,7 @@ from sheenmap.wafer.disc import find_disc, find_discs
 from sheenmap.wafer.faults import NoDiscError, RegionError, SiteError
 from sheenmap.wafer.locate import locate, locate_each
 from sheenmap.wafer.region import Disc, Region, Sites
+from sheenmap.wafer.register import Registration, register
 from sheenmap.wafer.sites import site_positions
 from sheenmap.wafer.spec import RegionSpec, SiteSpec
 from sheenmap.wafer.viewing import viewing_angle_deg
@@ -21,6 +22,7 @@ __all__ = [
     "Region",
     "RegionError",
     "RegionSpec",
+    "Registration",
     "SiteError",
     "SiteSpec",
     "Sites",
@@ -32,6 +34,7 @@ __all__ = [
     "locate_each",
     "part_mm",
     "picture_px",
+    "register",
     "site_positions",
     "viewing_angle_deg",
 ]
