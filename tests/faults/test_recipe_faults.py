@@ -140,6 +140,7 @@ FULL_ROWS: list[tuple[str, Any, str, str]] = [
     ("sites.layout", "grid ten", "sites.layout", "grid ten"),
     ("sites.radius_mm", 0, "sites.radius_mm", "found 0"),
     ("region", {"shape": "frame", "width_mm": 9}, "sites.layout", "rings-49"),
+    ("tolerance", {"nonuniformity_percent": 1, "formula": "largest deviation over target"}, "tolerance.target_nm", "nothing"),
     ("shot.0.camera", None, "shot[0].camera.blank", "nothing"),
     ("shot.0.camera.blank.photo", "none.png", "shot[0].camera.blank.photo", "none.png"),
     ("shot.0.light.spectrum", "B52", "shot[0].light.spectrum", "B52"),

@@ -163,6 +163,25 @@ def test_a_csv_with_a_byte_order_mark_is_none(folder: Path) -> None:
     assert faults_of(folder, changed(bench(), "stack.layers.0.material", "film.csv")) == []
 
 
+def test_sites_with_a_byte_order_mark_are_read(folder: Path) -> None:
+    (folder / "sites.csv").write_bytes(b"\xef\xbb\xbfx_mm,y_mm\r\n0,0\r\n")
+    assert faults_of(folder, changed(every_key()[0], "sites.layout", "sites.csv")) == []
+
+
+def test_a_curve_must_cover_the_bands_of_all_shots(folder: Path) -> None:
+    dark, lit = "wavelength_nm,power\n380,0\n500,0\n501,1\n", "599,1\n600,0\n780,0\n"
+    (folder / "lamp.csv").write_text(dark + lit)
+    (folder / "film.csv").write_text(GOOD.replace("380", "501").replace("780", "620"))
+    table = changed(changed(bench(), "stack.layers.0.material", "film.csv"), "light.spectrum", "lamp.csv")
+    assert faults_of(folder, table) == []
+    shot = {"photo": "shot.png", "light": {"spectrum": "E"}}
+    (fault,) = faults_of(folder, table | {"shot": [shot]})
+    assert fault.key == "stack.layers[0].material"
+    low, high = fault.allowed.split(" nm")[0].split(" to ")
+    assert float(low) < 501
+    assert float(high) > 620
+
+
 def test_a_huge_csv_is_not_read(folder: Path) -> None:
     with (folder / "film.csv").open("wb") as file:
         file.truncate(30_000_000)

@@ -48,7 +48,7 @@ def read_recipe(path: Path | str) -> Recipe:
     reader.finish()
     faults.extend(band_faults(shots, around.curves, holds_ends=holds_ends))
     if faults or stack.stack is None or stack.search_nm is None:
-        raise RecipeError(dict.fromkeys(faults), where=path.name)
+        raise RecipeError(faults, where=path.name)
     return Recipe(
         path=path, title=title, text=text, digest=around.folder.digest(text), stack=stack.stack, search_nm=stack.search_nm,
         index_scale=stack.index_scale, shots=shots, region=region, sites=sites, tolerance=tolerance,
