@@ -16,6 +16,7 @@ from sheenmap.optics.medium import Media, media_of
 from sheenmap.optics.stack import Stack, View
 
 PROBE_THICKNESSES, PROBE_WAVELENGTHS = 6, 12
+BENT_K = 0.1  # what absorbs more has no sharp critical angle
 
 
 def reflectance(stack: Stack, thickness_nm: FloatArray, wavelength_nm: FloatArray, view: View) -> FloatArray:
@@ -107,8 +108,13 @@ def _directions(stack: Stack, media: Media, thickness_nm: FloatArray, view: View
         indices=tuple(index[some] for index in media.indices),
         behind=None if media.behind is None else media.behind[some],
     )
-    medium_index = float(np.median(media.indices[0].real))
-    return directions(view, medium_index, lambda tried: _averaged(stack, probed, probe_nm, tried))
+    medium_index, *below = (complex(np.median(index.real), np.median(index.imag)) for index in media.indices)
+    critical_rad = [
+        float(np.arcsin(index.real / medium_index.real))
+        for index in below
+        if index.real < medium_index.real and -index.imag < BENT_K
+    ]
+    return directions(view, medium_index.real, critical_rad, lambda tried: _averaged(stack, probed, probe_nm, tried))
 
 
 def _averaged(stack: Stack, media: Media, thickness_nm: FloatArray, seen: Directions) -> FloatArray:
