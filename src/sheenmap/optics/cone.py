@@ -9,11 +9,12 @@ At a critical angle reflectance bends like a square root: such angles part the n
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cache
 from itertools import pairwise
 
 import numpy as np
 
-from sheenmap.arrays import FloatArray
+from sheenmap.arrays import FloatArray, read_only
 from sheenmap.optics.stack import View
 
 CONVERGED = 1e-10  # in reflectance; the nodes' own rounding is 1e-14
@@ -122,7 +123,7 @@ def _over_azimuth(axis_rad: float, angle_rad: FloatArray, widest: FloatArray) ->
 
 def _on_nodes(pupil: _Pupil, share_s: float, count: int) -> Directions:
     """The pupil's weights on ``count`` nodes in each stretch between critical angles."""
-    x, w = np.polynomial.legendre.leggauss(count)
+    x, w = _legendre(count)
     s = share_s * pupil.s_of_s + (1 - share_s) * (1 - pupil.s_of_s)
     bent = pupil.bounds.size > 2
     parts = []
@@ -157,13 +158,20 @@ def _lagrange(x: FloatArray, w: FloatArray, at: FloatArray) -> FloatArray:
     return np.asarray(terms / terms.sum(axis=0))
 
 
+@cache
+def _legendre(count: int) -> tuple[FloatArray, FloatArray]:
+    """Gauss-Legendre nodes and weights on -1 to 1; an eigenvalue problem, worth keeping."""
+    x, w = np.polynomial.legendre.leggauss(count)
+    return read_only(x), read_only(w)
+
+
 def _eased(low: float, high: float, count: int) -> tuple[FloatArray, FloatArray]:
     """Nodes and weights that take square roots at both ends without loss."""
-    x, w = np.polynomial.legendre.leggauss(count)
+    x, w = _legendre(count)
     slope = np.pi / 4 * (high - low) * np.cos(np.pi * x / 2)
     return low + (high - low) * (1 + np.sin(np.pi * x / 2)) / 2, w * slope
 
 
 def _gauss(low: float, high: float, count: int) -> tuple[FloatArray, FloatArray]:
-    x, w = np.polynomial.legendre.leggauss(count)
+    x, w = _legendre(count)
     return low + (high - low) * (x + 1) / 2, (high - low) * w / 2

@@ -23,7 +23,7 @@ CLEAR_K = 1e-3  # of water, alcohols and oils k is below 1e-4; metals and dyes a
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Folded:
-    """A stack at one angle and polarisation, all (W,).
+    """A stack at one angle and polarisation, all (W,); or at several angles, whose axes then come first.
 
     ``upper`` leads from the medium into the searched layer, ``lower`` from it into the substrate; ``phase_per_nm`` is
     2 pi q / wavelength of the searched layer. Without a searched layer ``upper`` is the whole stack, ``lower`` lets all
@@ -56,8 +56,8 @@ def fold(stack: Stack, wavelength_nm: FloatArray, angle_rad: float, polarisation
     return fold_media(stack, media_of(stack, wavelength_nm), angle_rad, polarisation)
 
 
-def fold_media(stack: Stack, media: Media, angle_rad: float, polarisation: Literal["s", "p"]) -> Folded:
-    """As ``fold``, from indices that have been sampled."""
+def fold_media(stack: Stack, media: Media, angle_rad: float | FloatArray, polarisation: Literal["s", "p"]) -> Folded:
+    """As ``fold``, from indices that have been sampled; angles (..., 1) are folded at once."""
     sine = snell_invariant(media, angle_rad)
     ends = (0, len(media.indices) - 1)
     q = [normal_index(n, sine, NO_DIRECTION if j in ends else NEAR_CRITICAL) for j, n in enumerate(media.indices)]
@@ -67,7 +67,7 @@ def fold_media(stack: Stack, media: Media, angle_rad: float, polarisation: Liter
     split = len(faces) if at is None else at + 1
     return Folded(
         upper=_joined_all(faces[:split], crossings[: split - 1]),
-        lower=open_face(q[0].size) if at is None else _joined_all(faces[split:], crossings[split:]),
+        lower=open_face(q[0]) if at is None else _joined_all(faces[split:], crossings[split:]),
         phase_per_nm=np.zeros_like(q[0]) if at is None else 2 * np.pi * q[at + 1] / media.wavelength_nm,
         q_substrate=q[-1],
         eta_medium=eta[0],
@@ -75,11 +75,11 @@ def fold_media(stack: Stack, media: Media, angle_rad: float, polarisation: Liter
     )
 
 
-def snell_invariant(media: Media, angle_rad: float) -> FloatArray:
-    """N_0 sin(theta_0) (W,), the same in every layer."""
+def snell_invariant(media: Media, angle_rad: float | FloatArray) -> FloatArray:
+    """N_0 sin(theta_0) (..., W), the same in every layer."""
     medium = media.indices[0]
     darkest = float(np.max(-medium.imag, initial=0.0))
-    if angle_rad != 0 and darkest > CLEAR_K:
+    if np.any(angle_rad) and darkest > CLEAR_K:
         raise ValueError(f"the medium absorbs (k = {darkest:g}); at an angle k may be up to {CLEAR_K:g}")
     return np.asarray(medium.real * np.sin(angle_rad))
 

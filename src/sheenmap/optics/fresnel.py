@@ -53,9 +53,9 @@ def face(above: ComplexArray, below: ComplexArray) -> Face:
     return Face(r_down=r, t_down=2 * above / total, r_up=-r, t_up=2 * below / total)
 
 
-def open_face(count: int) -> Face:
-    """A face between a medium and itself at ``count`` wavelengths: all light passes."""
-    none, all_of_it = np.zeros(count, dtype=complex), np.ones(count, dtype=complex)
+def open_face(like: ComplexArray) -> Face:
+    """A face between a medium and itself, of the shape of ``like``: all light passes."""
+    none, all_of_it = np.zeros_like(like), np.ones_like(like)
     return Face(r_down=none, t_down=all_of_it, r_up=none, t_up=all_of_it)
 
 
@@ -64,9 +64,10 @@ def roughened(smooth: Face, q_above: ComplexArray, q_below: ComplexArray, rough_
 
     Notes
     -----
-    Reflection falls by exp(-2 (2 pi s q / L)^2) with q on the side of the light, transmission by
-    exp(-(2 pi s (q_above - q_below) / L)^2 / 2). Both are means of the phase over Gaussian heights, so that a rough face never
-    gives back more than it gets. Where q is complex its modulus is taken: what fades is not to grow.
+    Reflection falls by exp(-2 (2 pi s Re q / L)^2) with q on the side of the light, transmission by
+    exp(-(2 pi s Re(q_above - q_below) / L)^2 / 2). Both are means over Gaussian heights of the phase with which a wave comes and
+    goes. Only the phase is taken (Re q): between clear media, fading fields included, a mean of faces that lose nothing gains
+    nothing. A face between absorbing media is meant to be smooth against their thickness.
 
     References
     ----------
@@ -74,12 +75,12 @@ def roughened(smooth: Face, q_above: ComplexArray, q_below: ComplexArray, rough_
     """
     if rough_nm == 0:
         return smooth
-    wave = 2 * np.pi * rough_nm / wavelength_nm
-    passed = np.exp(-0.5 * (wave * np.abs(q_above - q_below)) ** 2)
+    above, below = (2 * np.pi * rough_nm / wavelength_nm * q.real for q in (q_above, q_below))
+    passed = np.exp(-0.5 * (above - below) ** 2)
     return Face(
-        r_down=smooth.r_down * np.exp(-2 * (wave * np.abs(q_above)) ** 2),
+        r_down=smooth.r_down * np.exp(-2 * above**2),
         t_down=smooth.t_down * passed,
-        r_up=smooth.r_up * np.exp(-2 * (wave * np.abs(q_below)) ** 2),
+        r_up=smooth.r_up * np.exp(-2 * below**2),
         t_up=smooth.t_up * passed,
     )
 

@@ -114,7 +114,18 @@ def _directions(stack: Stack, media: Media, thickness_nm: FloatArray, view: View
         for index in below
         if index.real < medium_index.real and -index.imag < BENT_K
     ]
-    return directions(view, medium_index.real, critical_rad, lambda tried: _averaged(stack, probed, probe_nm, tried))
+    return directions(view, medium_index.real, critical_rad, lambda tried: _at_once(stack, probed, probe_nm, tried))
+
+
+def _at_once(stack: Stack, media: Media, thickness_nm: FloatArray, seen: Directions) -> FloatArray:
+    """What ``_averaged`` gives, (T, W), with all directions in memory: quick for few thicknesses."""
+    total = np.zeros((thickness_nm.size, media.wavelength_nm.size))
+    polarised: tuple[tuple[Literal["s", "p"], FloatArray], ...] = (("s", seen.s), ("p", seen.p))
+    for polarisation, weights in polarised:
+        beam = _beam(stack, media, 1.0, seen.angle_rad[:, None, None], polarisation)
+        round_trip = np.exp(thickness_nm[:, None] * (-2j * beam.folded.phase_per_nm))
+        total += np.einsum("n,ntw->tw", weights, _reflected(beam, round_trip))
+    return total
 
 
 def _averaged(stack: Stack, media: Media, thickness_nm: FloatArray, seen: Directions) -> FloatArray:
@@ -137,7 +148,7 @@ def _beams(stack: Stack, media: Media, seen: Directions) -> Iterator[_Beam]:
             yield _beam(stack, media, weight_p, angle_rad, "p")
 
 
-def _beam(stack: Stack, media: Media, weight: float, angle_rad: float, polarisation: Literal["s", "p"]) -> _Beam:
+def _beam(stack: Stack, media: Media, weight: float, angle_rad: float | FloatArray, polarisation: Literal["s", "p"]) -> _Beam:
     folded = fold_media(stack, media, angle_rad, polarisation)
     if stack.back is None or media.behind is None:
         return _Beam(weight=weight, folded=folded, far=None)
