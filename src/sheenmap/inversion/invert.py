@@ -11,7 +11,7 @@ from sheenmap.camera import Signal
 from sheenmap.flags import AMBIGUOUS, AT_LIMIT, BY_CONTINUITY, DARK, OFF_CURVE, OUTSIDE, WEAK, FlagArray, is_blocked
 from sheenmap.inversion.blocks import Blocks, gather_blocks
 from sheenmap.inversion.candidates import find_candidates
-from sheenmap.inversion.contradiction import is_contradicted
+from sheenmap.inversion.contradiction import is_contradicted, misfit
 from sheenmap.inversion.likelihood import Doubts, chi_square_limit
 from sheenmap.inversion.local import Local, around, fit_locally, pixels_at
 from sheenmap.inversion.posterior import posterior_near
@@ -36,7 +36,7 @@ class Inversion:
 
     ``thickness_nm`` and ``sigma_nm`` are NaN where no value was formed; whether it is claimed is for ``flags`` to say.
     ``chi_square`` is that of the best fit; ``block`` the block that led a pixel; ``settled`` what the blocks hold.
-    ``is_contradicted`` tells that the picture as a whole does not go with the table; then nothing is claimed.
+    ``misfit`` is about 1 where noise and shading explain the residuals. ``is_contradicted`` tells that the picture as a whole does not go with the table; then nothing is claimed.
     ``signal`` and ``doubts`` are the ones that were used in the end: with the noise and the shading that the picture showed.
     """
 
@@ -50,6 +50,7 @@ class Inversion:
     doubts: Doubts
     blocks: Blocks
     is_contradicted: bool
+    misfit: float
 
 
 def invert(
@@ -87,7 +88,7 @@ def invert(
         flags[usable] |= np.uint16(OFF_CURVE.mask)
     return Inversion(
         thickness_nm=thickness_nm, sigma_nm=sigma_nm, chi_square=chi_square, flags=flags, block=local.block,
-        settled=settled, signal=signal, doubts=doubts, blocks=blocks, is_contradicted=contradicted,
+        settled=settled, signal=signal, doubts=doubts, blocks=blocks, is_contradicted=contradicted, misfit=misfit(settled, table),
     )  # fmt: skip
 
 

@@ -66,6 +66,7 @@ class Settled:
     rival_gap: FloatArray
     link_nm: float
     evidence: Evidence
+    shaded: Evidence
 
     @property
     def sure(self) -> BoolArray:
@@ -103,6 +104,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
         rival_gap=_over_best(rival_cost),
         link_nm=width_nm,
         evidence=evidence,
+        shaded=shaded,
     )
 
 
@@ -275,5 +277,5 @@ def _nothing(shape: tuple[int, int], evidence: Evidence) -> Settled:
     nan, none = np.full(shape, np.nan), np.full((*shape, 1), np.nan)
     return Settled(
         thickness_nm=nan, sigma_nm=nan, region=np.full(shape, -1), gap=np.zeros(shape), alone=np.zeros(shape, bool),
-        others_nm=none, rivals_nm=none, rival_gap=none, link_nm=0.0, evidence=evidence,
+        others_nm=none, rivals_nm=none, rival_gap=none, link_nm=0.0, evidence=evidence, shaded=evidence,
     )  # fmt: skip

@@ -8,6 +8,7 @@ from sheenmap.flags import OUTSIDE, has, is_blocked
 from sheenmap.inversion import Doubts, Inversion
 from sheenmap.lookup import Table
 from sheenmap.measure.budget import budget, common_u_nm
+from sheenmap.measure.causes import likely_causes, told
 from sheenmap.measure.frames import Frames
 from sheenmap.measure.judging import judge_map, read_recipe_sites
 from sheenmap.measure.notes import headline, notes
@@ -40,6 +41,10 @@ def assemble(
     verdict = None
     if is_measured and recipe.tolerance is not None:
         verdict = judge_map(recipe, region, thickness_nm, sigma_nm, flags, readings, numbers, u_common_nm)
+    sentence = headline(numbers, u_common_nm, flags, region, is_measured=is_measured)
+    if inversion.is_contradicted:
+        causes = likely_causes(recipe, shots, region, table, inversion)
+        sentence = f"not measured: the picture contradicts the recipe; {told(causes)}"
     image, scale = preview(shots[0])
     return Measurement(
         title=recipe.title,
@@ -51,7 +56,7 @@ def assemble(
         preview_scale=scale,
         region=region,
         statistics=numbers,
-        sentence=headline(numbers, u_common_nm, flags, region, is_measured=is_measured),
+        sentence=sentence,
         is_measured=is_measured,
         candidates_nm=None if listed is None else listed[0],
         candidate_odds=None if listed is None else listed[1],

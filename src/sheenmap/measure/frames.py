@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from sheenmap.camera import Frame, Noise, Rounding, linear_codes, linear_frame, stated_noise
 from sheenmap.errors import Fault, SettingsError
-from sheenmap.pictures import Averaged, Picture, average_frames, read_picture, read_plane
+from sheenmap.pictures import Averaged, Codes, Picture, average_frames, read_picture, read_plane
 from sheenmap.recipe import CameraSetup, Shot
 
 SMALLEST = 16  # pixels; below, neither noise nor neighbours can be told
@@ -17,12 +17,14 @@ MOST_CLIPPED = 0.2  # share of a blank at full scale above which it is no refere
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Frames:
-    """A shot's pictures: linear ``photo`` and ``blank``, ``dark`` (H, W, 3) or None, ``angle_deg`` (H, W) or None."""
+    """A shot's pictures: linear ``photo`` and ``blank``, ``dark`` (H, W, 3) or None, the codes of both, ``angle_deg`` (H, W) or None."""
 
     picture: Picture
     photo: Frame
     blank: Frame
     dark: NDArray[np.float32] | None
+    blank_codes: Codes
+    dark_codes: Codes | None
     angle_deg: NDArray[np.float32] | None
     digests: dict[str, str]
     notes: tuple[str, ...]
@@ -54,6 +56,8 @@ def read_frames(photo_path: Path, shot: Shot) -> Frames:
         photo=linear_frame(picture.codes, setup.encoding, picture.full_scale, noise=_stated(setup, picture.full_scale)),
         blank=linear_frame(blank.codes, setup.encoding, blank.full_scale, frames=blank.frames),
         dark=None if dark is None else linear_codes(dark.codes, setup.encoding, dark.full_scale),
+        blank_codes=blank.codes,
+        dark_codes=None if dark is None else dark.codes,
         angle_deg=angle_deg,
         digests={photo_path.name: picture.digest} | blank.digests | ({} if dark is None else dark.digests),
         notes=picture.notes,

@@ -18,6 +18,7 @@ BLAME = {
     AT_LIMIT: "the best fit stands on the end of the search range: widen search_nm",
 }
 WORTH_SAYING = 0.05
+WORTH_DOUBTING = 1.7  # right set-ups stay below 1.3
 
 
 def headline(numbers: Statistics, u_common_nm: float, flags: FlagArray, region: Region, *, is_measured: bool) -> str:
@@ -50,6 +51,11 @@ def notes(recipe: Recipe, shots: tuple[Frames, ...], table: Table, inversion: In
     if recipe.index_scale.u == 0:
         found.append(
             "the film's index is taken as exact; 1 % of it is about 1 % of the thickness (index_scale = { value = 1.0, u = ... })"
+        )
+    if inversion.misfit > WORTH_DOUBTING and not inversion.is_contradicted:
+        found.append(
+            f"residuals are {inversion.misfit:.1f} times what noise and shading explain, on all of the film: "
+            "lamp, camera response or index may be off by more than the uncertainty says"
         )
     inside = inversion.flags[(inversion.flags & np.uint16(OUTSIDE.mask)) == 0]
     for flag in FLAGS:

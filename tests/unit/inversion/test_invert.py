@@ -128,10 +128,10 @@ def test_a_table_of_another_material_claims_nothing(table, rng):
 def test_metal_beside_film_does_not_make_the_set_up_suspect(table, rng):
     truth = np.full((96, 96), 260.0)
     metal = np.zeros(truth.shape, bool)
-    metal[:, :60] = True
+    metal[:, :50] = True
     found = invert(photograph(truth, table, rng, painted=(metal, (1.9, 1.5, 0.9))), table, everywhere(truth), doubts=Doubts())
     assert not found.is_contradicted
-    assert (~is_blocked(found.flags[:, 66:])).mean() > 0.98
+    assert (~is_blocked(found.flags[:, 56:])).mean() > 0.98
 
 
 def test_a_film_beyond_the_search_range_is_at_its_limit(table, rng):
