@@ -20,6 +20,7 @@ from sheenmap.optics.stack import View
 CONVERGED = 1e-10  # in reflectance; the nodes' own rounding is 1e-14
 COUNTS = (3, 4, 6, 9, 13, 19, 28, 42, 63, 95, 143, 215)  # the last ones are for critical angles that move with wavelength
 NARROWEST = 1e-7  # a narrower cone changes reflectance by about its square
+NEAR_RAD = 0.05  # a critical angle this far outside the cone still bends what is inside
 RINGS, SPOKES = 256, 32  # of the pupil's own sums, which cost no reflectance
 
 
@@ -66,13 +67,14 @@ def directions(
 class _Pupil:
     """Angles (P,) to the film's normal, their share of the pupil, and how much of s light (to the axis) is s to the film.
 
-    ``bounds`` are the angles where the stretches begin and end, rising.
+    ``bounds`` are the angles where the stretches begin and end, rising; ``bent`` says that a critical angle is one or is near.
     """
 
     angle_rad: FloatArray
     share: FloatArray
     s_of_s: FloatArray
     bounds: FloatArray
+    bent: bool
 
 
 def _pupil(axis_rad: float, half_angle_rad: float, critical_rad: Sequence[float]) -> _Pupil:
@@ -87,7 +89,8 @@ def _pupil(axis_rad: float, half_angle_rad: float, critical_rad: Sequence[float]
     circles, s_of_s = _over_azimuth(axis_rad, angle_rad, _widest_azimuth(axis_rad, half_angle_rad, angle_rad))
     share = step * np.sin(angle_rad) * circles
     s_of_s = np.divide(s_of_s, circles, out=np.full_like(circles, 0.5), where=circles > 0)
-    return _Pupil(angle_rad=angle_rad, share=share / share.sum(), s_of_s=s_of_s, bounds=bounds)
+    bent = any(low - NEAR_RAD < angle < high + NEAR_RAD for angle in critical_rad)
+    return _Pupil(angle_rad=angle_rad, share=share / share.sum(), s_of_s=s_of_s, bounds=bounds, bent=bent)
 
 
 def _widest_azimuth(axis_rad: float, half_angle_rad: float, angle_rad: FloatArray) -> FloatArray:
@@ -125,13 +128,12 @@ def _on_nodes(pupil: _Pupil, share_s: float, count: int) -> Directions:
     """The pupil's weights on ``count`` nodes in each stretch between critical angles."""
     x, w = _legendre(count)
     s = share_s * pupil.s_of_s + (1 - share_s) * (1 - pupil.s_of_s)
-    bent = pupil.bounds.size > 2
     parts = []
     for low, high in pairwise(pupil.bounds):
         inside = (pupil.angle_rad > low) & (pupil.angle_rad < high)
         at = 1 - 2 * _cosine_fall(low, pupil.angle_rad[inside]) / _cosine_fall(low, high)
-        terms = _lagrange(x, w, 2 * np.arcsin(np.clip(at, -1, 1)) / np.pi if bent else at)
-        cosine = np.cos(low) - _cosine_fall(low, high) * (1 - (np.sin(np.pi * x / 2) if bent else x)) / 2
+        terms = _lagrange(x, w, 2 * np.arcsin(np.clip(at, -1, 1)) / np.pi if pupil.bent else at)
+        cosine = np.cos(low) - _cosine_fall(low, high) * (1 - (np.sin(np.pi * x / 2) if pupil.bent else x)) / 2
         share, share_of_s = pupil.share[inside], s[inside]
         parts.append((np.arccos(cosine), terms @ (share * share_of_s), terms @ (share * (1 - share_of_s))))
     angle_rad, weight_s, weight_p = (np.concatenate(part) for part in zip(*parts))
