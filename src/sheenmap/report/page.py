@@ -68,6 +68,7 @@ def _rendered(measurement: Measurement, widest: int) -> str:
         sentence=sentence,
         below=below,
         numbers=words.number_rows(measurement),
+        formulas=words.formula_rows(measurement),
         flag_rows=list(zip(rows, FLAG_COLOURS)),
         percent=words.percent,
         steps=words.next_steps(measurement, rows),

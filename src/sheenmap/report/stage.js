@@ -72,7 +72,7 @@ function paint() {
 function showKey() {
   const rows = layer.key === "tolerance"
     ? [[WITHIN, "within the limits"], [NEAR, "within 1.645 u of a limit: open"], [BELOW, "below"], [ABOVE, "above"]]
-    : layer.key === "flags" ? [[CLEAR, "claimed, no flag"], ...D.flags.filter((flag, k) => k && planes.flags.some(f => f & flag.mask)).map(flag => [flag.colour, flag.name])] : [];
+    : layer.key === "flags" ? [...(D.has_map ? [[CLEAR, "claimed, no flag"]] : []), ...D.flags.filter((flag, k) => k && planes.flags.some(f => f & flag.mask)).map(flag => [flag.colour, flag.name])] : [];
   if (layer.key === "tolerance") rows.push([null, "not claimed"]);
   $("key").replaceChildren();
   for (const [colour, words] of rows) {
@@ -117,7 +117,7 @@ function point(column, row, speak = false) {
   const value = layer.plane && (layer.name === "residual" || claimed) ? planes[layer.plane][i] : NaN;
   markScale(value);
   markHistogram(claimed ? planes.thickness[i] : NaN);
-  if (!line && D.has_map) drawProfile([0, y, D.width - 1, y]);
+  if (!line && D.has_map) drawProfile(acrossRow());
   clearTimeout(speaking);
   if (speak) speaking = setTimeout(() => { $("spoken").textContent = ["r-px", "r-mm", "r-nm", "r-u", "r-flags"].map(id => $(id).textContent).join(", "); }, 300);
 }
@@ -126,7 +126,14 @@ function setLine(next) {
   line = next;
   $("clear").hidden = !line;
   for (const path of document.querySelectorAll(".rule, .rule-edge")) path.setAttribute("d", line ? `M${line[0]} ${line[1]}L${line[2]} ${line[3]}` : "");
-  if (D.has_map) drawProfile(line || [0, pixelOf(...at)[1], D.width - 1, pixelOf(...at)[1]]);
+  if (D.has_map) drawProfile(line || acrossRow());
+}
+function acrossRow() { // through the pointer, from one end of the region to the other
+  const first = at[1] * D.columns, y = pixelOf(...at)[1];
+  let [left, right] = [0, D.columns - 1];
+  while (left < right && isOutside(first + left)) left++;
+  while (left < right && isOutside(first + right)) right--;
+  return left < right ? [pixelOf(left, 0)[0], y, pixelOf(right, 0)[0], y] : [0, y, D.width - 1, y];
 }
 
 function placeOf(stage, event) {

@@ -9,10 +9,12 @@ import numpy as np
 
 from sheenmap.flags import FLAGS, OUTSIDE, WEAK, Flag, FlagArray
 from sheenmap.measure import Measurement
+from sheenmap.uniformity import FORMULAS
 
 MOST_ADVICE = 6
 WORTH_ADVICE = 0.002  # share of the region from which a flag's advice is given without looking it up
 WORTH_WEAK = 0.05
+JUDGED, USUAL_FORMULA = "nonuniformity (", "half-range over mean"  # how a check of nonuniformity is named; the first is its start
 CHUNK = 1 << 20  # pixels counted at once: the counter's copy stays inside the cache
 
 CAUTIONS = (
@@ -96,8 +98,8 @@ def _counts(flags: FlagArray) -> dict[int, int]:
 def number_rows(measurement: Measurement) -> tuple[tuple[str, str, str], ...]:
     """Name, value, and what it is of."""
     found = measurement.statistics
-    share = 100 * found.claimed / max(found.pixels, 1)
-    rows = [("claimed", f"{share:.1f} %", f"{found.claimed:,} of {found.pixels:,} pixels of the region")]
+    claimed = percent(found.claimed / max(found.pixels, 1))
+    rows = [("claimed", claimed, f"{found.claimed:,} of {found.pixels:,} pixels of the region")]
     if not has_map(measurement):
         return tuple(rows)
     rows += [
@@ -111,10 +113,27 @@ def number_rows(measurement: Measurement) -> tuple[tuple[str, str, str], ...]:
         )
         if value is not None
     ]
-    for formula, percent in measurement.nonuniformity_percent.items():
-        if percent is not None:
-            rows.append(("nonuniformity", f"{percent:.3g} %", f"{formula}, over the sites"))
+    judged = judged_formula(measurement)
+    value = measurement.nonuniformity_percent.get(judged)
+    if value is not None:
+        rows.append(("nonuniformity", f"{value:.3g} %", f"{judged}, over the sites"))
     return tuple(rows)
+
+
+def judged_formula(measurement: Measurement) -> str:
+    """The formula that the verdict's nonuniformity is by, or else the one that is usual."""
+    checks = () if measurement.verdict is None else measurement.verdict.checks
+    named = [check.name[len(JUDGED) : -1] for check in checks if check.name.startswith(JUDGED)]
+    return named[0] if named else USUAL_FORMULA
+
+
+def formula_rows(measurement: Measurement) -> tuple[tuple[str, str], ...]:
+    """Every definition of the sites' spread with its value."""
+    return tuple(
+        (name, f"{value:.4g} {FORMULAS[name].unit if name in FORMULAS else '%'}")
+        for name, value in measurement.nonuniformity_percent.items()
+        if value is not None
+    )
 
 
 def _plus_u(u_nm: float | None) -> str:
@@ -141,7 +160,7 @@ def _verdict_steps(measurement: Measurement) -> Iterator[str]:
     elif word == "failed":
         yield "Hold the part. Confirm the places named under the verdict on a qualified instrument before rework or scrap."
     elif word == "not decidable":
-        yield "Hold the part: this picture neither clears nor condemns it. Measure the places named under the verdict, or map again."
+        yield "Hold the part: this picture neither clears nor condemns it. Measure what the verdict names, or map again."
     elif word == "passed":
         yield "The tolerance is met under the rule that is named. Release it as your own quality system says."
 
@@ -154,6 +173,8 @@ def percent(share: float) -> str:
         return "< 0.01 %"
     if 0.9995 <= share < 1:
         return "> 99.9 %"
+    if share == 1:
+        return "100 %"
     return f"{100 * share:.2f} %" if share < 0.01 else f"{100 * share:.1f} %"
 
 
