@@ -56,9 +56,8 @@ def with_back(folded: Folded, film: BothSides, far: FarSide) -> tuple[FloatArray
     R = R_f + T_f T_f' tau^2 R_b / (1 - R_f' R_b tau^2), primes from inside; powers are added, per polarisation.
     """
     upper, lower = folded.upper, folded.lower
-    returned = far.crossing**2 * far.r
+    echo, returned = _echo(film, far)
     there_and_back = np.abs(upper.t_down * lower.t_down * upper.t_up * lower.t_up) ** 2 * returned
-    echo = 1 - film.r_up * returned
     added = there_and_back * film.passed**2 / echo
     slope = (2 * there_and_back * film.passed * film.passed_slope + added * film.r_up_slope * returned) / echo
     return film.r + added, film.r_slope + slope
@@ -66,5 +65,15 @@ def with_back(folded: Folded, film: BothSides, far: FarSide) -> tuple[FloatArray
 
 def through_back(folded: Folded, film: BothSides, far: FarSide) -> FloatArray:
     """Share (T, W) of the light that leaves through the far side: T_f tau T_b / (1 - R_f' R_b tau^2)."""
-    echo = 1 - film.r_up * far.crossing**2 * far.r
+    echo, _ = _echo(film, far)
     return np.asarray(entered(folded, film) * far.crossing * far.t / echo)
+
+
+def _echo(film: BothSides, far: FarSide) -> tuple[FloatArray, FloatArray]:
+    """1 - R_f' R_b tau^2 (T, W), and R_b tau^2 (W,).
+
+    Light that both faces reflect totally never gets in; the sum of its echoes is held above rounding, so that nothing times it
+    is nothing.
+    """
+    returned = far.crossing**2 * far.r
+    return np.maximum(1 - film.r_up * returned, np.finfo(float).eps), returned

@@ -61,3 +61,13 @@ def test_light_that_cannot_enter_the_substrate_meets_no_back():
     assert r == pytest.approx(1, abs=1e-12)
     assert slope == pytest.approx(0, abs=1e-12)
     assert transmittance(hidden, thickness_nm, GREEN_NM, view) == pytest.approx(0, abs=1e-15)
+
+
+def test_light_shut_in_between_two_total_reflections_never_got_there():
+    """At 60 degrees from 1.52, a thick gap of 1.0 before glass of 1.5 with air behind: both faces reflect all, from inside."""
+    shut = stack(1.52, layer(1.0), on=1.5, back=1.0)
+    thickness_nm, view = np.array([0.0, 300.0, 5_000.0, 50_000.0]), View(angle_deg=60.0)
+    r, slope = reflectance_and_slope(shut, thickness_nm, GREEN_NM, view)
+    assert r == pytest.approx(1, abs=1e-12)
+    assert slope == pytest.approx(0, abs=1e-12)
+    assert transmittance(shut, thickness_nm, GREEN_NM, view) == pytest.approx(0, abs=1e-15)
