@@ -5,21 +5,28 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from sheenmap.arrays import FloatArray, chunks
+from sheenmap.arrays import BoolArray, FloatArray, chunks
 from sheenmap.inversion.likelihood import Doubts, covariance
 from sheenmap.lookup import Table
 
 LARGEST_GAP = 40.0  # chi-square above the best beyond which a thickness is no candidate (odds of e^-20)
+INTERVAL_GAP = 6.0  # chi-square; 98.6 % of a Gaussian lies within
+FADED_NM, FADED_SHARE = 100.0, 0.5  # a turning point stays below 60 nm
 KEPT = 10
 CHUNK = 2048
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Candidates:
-    """Best first (N, K): thickness in nm and chi-square (inf where there is none); all doubts are in the chi-square."""
+    """Best first (N, K): thickness in nm and chi-square (inf where there is none); all doubts are in the chi-square.
+
+    ``is_faded`` (N,) where the colour no longer tells the thickness: within ``INTERVAL_GAP`` of the best lies a piece longer
+    than ``FADED_NM`` without a break, or more than ``FADED_SHARE`` of the search range.
+    """
 
     thickness_nm: FloatArray
     chi_square: FloatArray
+    is_faded: BoolArray
 
     @property
     def gap(self) -> FloatArray:
@@ -44,13 +51,16 @@ def find_candidates(
     """Candidates of signals (N, 3) with noise variance (N, 3), seen at angles (N,) where the table has an angle axis."""
     count = len(signal)
     thickness_nm, chi_square = np.full((count, KEPT), np.nan), np.full((count, KEPT), np.inf)
+    is_faded = np.zeros(count, bool)
+    searched = (table.thickness_nm >= table.search_nm[0]) & (table.thickness_nm <= table.search_nm[1])
     for angle, members in _by_angle(table, angle_deg, count):
         features = _features(table.signal[angle])
         for part in chunks(members.size, CHUNK):
             rows = members[part]
             curves = _chi_square_over_table(signal[rows], variance[rows], correlation, features, doubts)
             thickness_nm[rows], chi_square[rows] = _minima(curves, table)
-    return Candidates(thickness_nm=thickness_nm, chi_square=chi_square)
+            is_faded[rows] = _is_faded(curves[:, searched], table.step_nm)
+    return Candidates(thickness_nm=thickness_nm, chi_square=chi_square, is_faded=is_faded)
 
 
 def _by_angle(table: Table, angle_deg: NDArray[np.floating] | None, count: int) -> list[tuple[int, NDArray[np.intp]]]:
@@ -100,6 +110,17 @@ def _minima(curves: FloatArray, table: Table) -> tuple[FloatArray, FloatArray]:
     thickness_nm[row[kept], rank[kept]] = table.thickness_nm[at[kept]] + table.step_nm * offset[kept]
     chi_square[row[kept], rank[kept]] = depth[kept]
     return thickness_nm, chi_square
+
+
+def _is_faded(curves: FloatArray, step_nm: float) -> BoolArray:
+    """Whether so much of curves (N, T) over the search range lies about their lowest that they tell no thickness."""
+    best = curves.argmin(axis=1)[:, None]
+    misses = curves > np.take_along_axis(curves, best, axis=1) + INTERVAL_GAP
+    at, length = np.arange(curves.shape[1]), curves.shape[1]
+    before = np.where(misses & (at < best), at, -1).max(axis=1)
+    after = np.where(misses & (at > best), at, length).min(axis=1)
+    piece = (after - before - 1) * step_nm > min(FADED_NM, FADED_SHARE * length * step_nm)
+    return np.asarray(piece | (np.count_nonzero(misses, axis=1) < (1 - FADED_SHARE) * length))
 
 
 def _parabola(curves: FloatArray, row: NDArray[np.intp], at: NDArray[np.intp]) -> tuple[FloatArray, FloatArray]:

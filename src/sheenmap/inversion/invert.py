@@ -177,7 +177,8 @@ def _flag_strays(
 def _flag_order(flags: FlagArray, local: Local, settled: Settled, stray: BoolArray) -> None:
     led = (local.block >= 0) & ~stray
     block = local.block[led]
-    flags[led] |= np.where(settled.gap.ravel()[block] < DECIDED_GAP, np.uint16(AMBIGUOUS.mask), np.uint16(0))
+    undecided = (settled.gap.ravel()[block] < DECIDED_GAP) | settled.faded.ravel()[block]
+    flags[led] |= np.where(undecided, np.uint16(AMBIGUOUS.mask), np.uint16(0))
     flags[led] |= np.where(settled.alone.ravel()[block], np.uint16(0), np.uint16(BY_CONTINUITY.mask))
 
 

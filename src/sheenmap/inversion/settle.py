@@ -48,6 +48,8 @@ class Settled:
         Number of the region, -1 where a block knows nothing.
     gap : (h, w) float
         Chi-square by which the region's best other order is worse.
+    faded : (h, w) bool
+        True where so long a piece of the search range fits that the colour no longer tells the thickness.
     alone : (h, w) bool
         True where a single pixel of the block would settle the order by itself.
     others_nm : (h, w, K) float
@@ -60,6 +62,7 @@ class Settled:
     sigma_nm: FloatArray
     region: NDArray[np.intp]
     gap: FloatArray
+    faded: BoolArray
     alone: BoolArray
     others_nm: FloatArray
     rivals_nm: FloatArray
@@ -81,6 +84,8 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
     found = _candidates(blocks, even, blocks.variance, correlation, table, doubts)
     known = np.zeros(shape, bool)
     known.flat[even] = found.chi_square[:, 0] < chi_square_limit(OFF_CURVE_FALSE_ALARMS, blocks.signal.shape[-1])
+    faded = np.zeros(shape, bool)
+    faded.flat[even] = found.is_faded
     places, costs = _gridded(found, even, known)
     single = _candidates(blocks, even, pixel_variance, correlation, table, doubts)
     rivals_nm, rival_cost = _gridded(single, even, known)
@@ -98,6 +103,7 @@ def settle(blocks: Blocks, pixel_variance: FloatArray, correlation: FloatArray, 
         sigma_nm=_sigma(evidence, moved.thickness_nm.ravel(), table).reshape(shape),
         region=moved.region,
         gap=moved.gap,
+        faded=faded & known,
         alone=_alone(rivals_nm, rival_cost, moved.thickness_nm, width_nm) & known,
         others_nm=moved.others_nm,
         rivals_nm=rivals_nm,
@@ -275,7 +281,18 @@ def _over_best(cost: FloatArray) -> FloatArray:
 
 def _nothing(shape: tuple[int, int], evidence: Evidence) -> Settled:
     nan, none = np.full(shape, np.nan), np.full((*shape, 1), np.nan)
+    no = np.zeros(shape, bool)
     return Settled(
-        thickness_nm=nan, sigma_nm=nan, region=np.full(shape, -1), gap=np.zeros(shape), alone=np.zeros(shape, bool),
-        others_nm=none, rivals_nm=none, rival_gap=none, link_nm=0.0, evidence=evidence, shaded=evidence,
-    )  # fmt: skip
+        thickness_nm=nan,
+        sigma_nm=nan,
+        region=np.full(shape, -1),
+        gap=np.zeros(shape),
+        alone=no,
+        faded=no,
+        others_nm=none,
+        rivals_nm=none,
+        rival_gap=none,
+        link_nm=0.0,
+        evidence=evidence,
+        shaded=evidence,
+    )
