@@ -1,8 +1,8 @@
 """Coverage, wrong orders and error over the limit for 200 set-ups drawn at random: `python benchmarks/bench_honesty.py [N]`.
 
-A set-up is a film on a substrate, a lamp, a camera, a noise level, a bit depth, an encoding, an angle and a polarisation. The limit is that
-of Cramer and Rao for one pixel with its own noise and shading. A band is binomial at 1 in 1000 for 150 independent pixels
-a set-up, since the pixels of one share its shading.
+A set-up is a film on a substrate, a lamp, a camera, a noise level, a bit depth, an encoding, an angle, a polarisation. The
+limit is that of Cramer and Rao for one pixel with its own noise and shading. A band is binomial at 1 in 1000 for 150
+independent pixels a set-up, since the pixels of one share its shading.
 """
 
 import sys
@@ -13,13 +13,12 @@ from scipy.stats import binom
 
 sys.path.insert(0, str(Path(__file__).resolve().parent.parent / "tests"))
 
-from simulated import Sensor, film_on, photograph, ramp, table_of
-
 from sheenmap.flags import is_blocked
 from sheenmap.inversion import Doubts, invert
 from sheenmap.inversion.likelihood import Whitener
 from sheenmap.lookup import evaluate
 from sheenmap.optics import View
+from simulated import Sensor, film_on, photograph, ramp, table_of
 
 FILMS = ("SiO2", "Si3N4", "Al2O3", "HfO2", "PMMA", "TiO2", "polystyrene", "Ta2O5", "a-Si", "TiN")
 SUBSTRATES = ("Si", "Si", "GaAs", "glass", "Al")
@@ -84,7 +83,8 @@ def main(count: int) -> None:
         low, high = binom.ppf([0.0005, 0.9995], count * INDEPENDENT, level) / (count * INDEPENDENT)
         print(f"coverage at {100 * level:.0f} %: {100 * np.mean(z <= k):.2f} % (band {100 * low:.2f} to {100 * high:.2f} %)")
     print(
-        "\n| set-ups | number | claimed | wrong | error over limit | within 95 % | limit beyond 8 nm |\n|---|---|---|---|---|---|---|"
+        "\n| set-ups | number | claimed | wrong | error over limit | within 95 % | limit beyond 8 nm |"
+        "\n|---|---|---|---|---|---|---|"
     )
     print(line("all", rows))
     for key, names in (("film", FILMS), ("substrate", dict.fromkeys(SUBSTRATES)), ("light", LIGHTS)):

@@ -36,7 +36,8 @@ class Inversion:
 
     ``thickness_nm`` and ``sigma_nm`` are NaN where no value was formed; whether it is claimed is for ``flags`` to say.
     ``chi_square`` is that of the best fit; ``block`` the block that led a pixel; ``settled`` what the blocks hold.
-    ``misfit`` is about 1 where noise and shading explain the residuals. ``is_contradicted`` tells that the picture as a whole does not go with the table; then nothing is claimed.
+    ``misfit`` is about 1 where noise and shading explain the residuals.
+    ``is_contradicted`` tells that the picture as a whole does not go with the table; then nothing is claimed.
     ``signal`` and ``doubts`` are the ones that were used in the end: with the noise and the shading that the picture showed.
     """
 

@@ -17,7 +17,10 @@ MOST_CLIPPED = 0.2  # share of a blank at full scale above which it is no refere
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Frames:
-    """A shot's pictures: linear ``photo`` and ``blank``, ``dark`` (H, W, 3) or None, the codes of both, ``angle_deg`` (H, W) or None."""
+    """A shot's pictures.
+
+    Linear ``photo`` and ``blank``, ``dark`` (H, W, 3) or None, the codes of both, ``angle_deg`` (H, W) or None.
+    """
 
     picture: Picture
     photo: Frame
