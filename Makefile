@@ -1,5 +1,6 @@
 # The targets of this project; `make` alone lists them. Each sets up what it needs in .venv first.
-PYTHON ?= $(shell command -v python3.13 || command -v python3.12 || command -v python3.11 || command -v python3)
+PYTHON ?= $(or $(shell for p in python3 python3.13 python3.12 python3.11; do \
+  $$p -c 'import sys; sys.exit(sys.version_info < (3, 11))' 2>/dev/null && { echo $$p; break; }; done),python3)
 VENV := .venv
 BIN := $(VENV)/bin
 READY := $(VENV)/ready
@@ -12,7 +13,7 @@ help: ## list the targets
 	@grep -E '^[a-z]+:.*##' $(MAKEFILE_LIST) | sed -E 's/:.*## /\t/' | awk -F'\t' '{printf "  make %-8s %s\n", $$1, $$2}'
 
 $(READY): pyproject.toml
-	@$(PYTHON) -c 'import sys; sys.exit("Python 3.11 or later is needed, this is " + sys.version.split()[0]) if sys.version_info < (3, 11) else None'
+	@$(PYTHON) -c 'import sys; sys.version_info < (3, 11) and sys.exit("Python 3.11 or later is needed, this is " + sys.version.split()[0])'
 	$(PYTHON) -m venv $(VENV)
 	$(BIN)/python -m pip install --quiet --disable-pip-version-check --upgrade pip
 	$(BIN)/python -m pip install --quiet --disable-pip-version-check --editable '.[test,lint]'

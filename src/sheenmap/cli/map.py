@@ -82,6 +82,6 @@ def _explain(photo: Path, recipe: "Recipe", place: tuple[int, int], *, as_json: 
 
 
 def _status(measurement: "Measurement") -> int:
-    if measurement.statistics.claimed == 0:
+    if not measurement.is_measured:
         return NOT_DECIDABLE
     return OF_OUTCOME[measurement.verdict.outcome] if measurement.verdict is not None else 0

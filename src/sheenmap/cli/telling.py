@@ -21,7 +21,7 @@ def tell_map(measurement: "Measurement", folder: Path, *, as_json: bool) -> None
     click.echo(f"written to {folder}: open {folder / 'report.html'}", err=True)
     if as_json:
         click.echo(render_json(document), nl=False)
-        if measurement.statistics.claimed == 0:
+        if not measurement.is_measured:
             click.echo(measurement.sentence, err=True)
         return
     click.echo("\n".join([*_numbers(measurement), _flags_line(document["flags"])]))
@@ -71,6 +71,6 @@ def _flags_line(table: dict[str, dict[str, Any]]) -> str:
 
 
 def _closing(measurement: "Measurement") -> list[str]:
-    if measurement.verdict is None or measurement.statistics.claimed == 0:
+    if measurement.verdict is None or not measurement.is_measured:
         return [measurement.sentence]
     return [measurement.sentence, measurement.verdict.sentence]
