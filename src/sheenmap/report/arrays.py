@@ -14,7 +14,7 @@ from sheenmap.flags import FLAGS, is_blocked
 from sheenmap.measure import Measurement
 
 WIDEST = 700  # cells along a side
-SIGMA_STEP, RESIDUAL_STEP = 0.005, 0.03  # steps of a logarithmic scale
+SIGMA_STEP, RESIDUAL_STEP = 0.002, 0.03  # steps of a logarithmic scale
 MOST_CANDIDATES = 3
 LAST_CODE = 65_535
 FLAG_BYTES = 1 if max(flag.bit for flag in FLAGS) < 8 else 2
@@ -40,7 +40,7 @@ class Grid:
 def grid_of(height: int, width: int, *, widest: int = WIDEST) -> Grid:
     """The finest grid with no more than ``widest`` cells along a side."""
     stride = max(1, math.ceil(width / widest), math.ceil(height / widest))
-    offset = (stride - 1) // 2
+    offset = min((stride - 1) // 2, height - 1, width - 1)
     return Grid(stride=stride, offset=offset, columns=len(range(offset, width, stride)), rows=len(range(offset, height, stride)))
 
 

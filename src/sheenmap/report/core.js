@@ -48,10 +48,15 @@ const isOutside = i => (planes.flags[i] & D.outside) !== 0;
 const isClaimed = i => !isBlocked(i) && planes.thickness[i] === planes.thickness[i];
 const flagsAt = i => D.flags.filter(flag => planes.flags[i] & flag.mask);
 
+const sorted = new Map(); // planes, least value first; sorting is what costs
 function quantile(plane, level) {
-  const kept = plane.filter((value, i) => value === value && !isOutside(i)).sort();
+  if (!sorted.has(plane)) sorted.set(plane, plane.filter((value, i) => value === value && !isOutside(i)).sort());
+  const kept = sorted.get(plane);
   return kept.length ? kept[Math.round(level * (kept.length - 1))] : NaN;
 }
+let claimedNm = null, claimedU = null;
+const claimedOnly = () => claimedNm ||= planes.thickness.map((nm, i) => isClaimed(i) ? nm : NaN);
+const claimedSigma = () => claimedU ||= planes.sigma.map((u, i) => isClaimed(i) ? u : NaN);
 
 // Drawing
 const NS = "http://www.w3.org/2000/svg";
@@ -81,9 +86,8 @@ function ticks(low, high, most) {
   for (let k = Math.ceil(low / step - 1e-9); k * step <= high + 1e-9 * span; k++) found.push(k * step);
   return found;
 }
-const digits = span => Math.max(0, Math.min(3, 2 - Math.floor(Math.log10(span || 1))));
 const tickText = (value, all) => {
   const step = all.length > 1 ? all[1] - all[0] : 1;
   return value.toFixed(Math.max(0, -Math.floor(Math.log10(step) + 1e-9))).replace(/^-(0(\.0*)?)$/, "$1").replace("-", "\u2212");
 };
-const signed = value => (value < 0 ? "\u2212" : "+") + Math.abs(value).toFixed(1);
+const signed = value => Math.abs(value) < 0.05 ? "0.0" : (value < 0 ? "\u2212" : "+") + Math.abs(value).toFixed(1);

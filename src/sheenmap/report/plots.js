@@ -54,8 +54,6 @@ function histogramSpan() {
     [low, high] = [Math.min(low, limit - 0.05 * span), Math.max(high, limit + 0.05 * span)];
   return [low, high];
 }
-let claimedCache = null;
-const claimedOnly = () => claimedCache ||= planes.thickness.map((nm, i) => isClaimed(i) ? nm : NaN);
 
 function drawHistogram() {
   const box = $("histogram");

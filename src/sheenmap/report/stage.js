@@ -27,7 +27,6 @@ function spans() { // what the colour scale can run over, for this layer
   }
   return { "0.1 to 30": [0.1, 30] };
 }
-const claimedSigma = () => planes.sigma.map((u, i) => isClaimed(i) ? u : NaN);
 const widened = ([low, high]) => high > low ? [low, high] : [low - 0.5, high + 0.5];
 
 function colourOf(i) { // the colour of a cell, or null where the hatching shows
