@@ -66,6 +66,7 @@ def test_cone_about_the_normal_is_the_integral_over_the_pupil_radius(film, below
     assert at(whole, thickness_nm, wavelength_nm, View(aperture=aperture)) == pytest.approx(expected, abs=1e-9)
 
 
+@settings(deadline=None)
 @given(clear, clear, st.floats(0, 800), wavelengths_nm, st.floats(0, 80), polarisations)
 @example(1.46, 4.0, 300.0, 550.0, 1e-9, "s")  # an axis a hair off the normal
 def test_narrow_cone_tends_to_its_axis(film, below, thickness_nm, wavelength_nm, angle_deg, polarisation):
@@ -80,6 +81,7 @@ def test_narrow_cone_tends_to_its_axis(film, below, thickness_nm, wavelength_nm,
     assert distances[3] < 1e-3
 
 
+@settings(deadline=None)
 @given(st.floats(1.3, 2.5), st.floats(0.05, 0.2))
 def test_cone_makes_a_film_look_thinner_by_its_aperture_squared(film, aperture):
     """Read over true is 1 - NA^2 / (4 n^2) to first order, which the next order, of NA^4, leaves within a fifth of."""

@@ -65,6 +65,7 @@ def test_powers_with_a_back_are_those_of_the_reference_library(whole, thickness_
     assert through(*at)[0] == pytest.approx(t, abs=1e-10)
 
 
+@settings(deadline=None)
 @given(stacks(), some_thicknesses_nm, wavelengths_nm, views())
 def test_nothing_gives_back_more_than_it_gets(whole, thickness_nm, wavelength_nm, view):
     r, t = (power(whole, thickness_nm, wavelength_nm, view) for power in (seen, through))
@@ -73,6 +74,7 @@ def test_nothing_gives_back_more_than_it_gets(whole, thickness_nm, wavelength_nm
     assert np.all(r + t <= 1 + ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(lossless=True), some_thicknesses_nm, wavelengths_nm, views())
 @example(stack(2.0, layer(1.0), on=2.0), np.array([50.0]), 500.0, View(angle_deg=30.0))  # a film exactly at its critical angle
 def test_clear_stacks_lose_nothing(whole, thickness_nm, wavelength_nm, view):
@@ -81,6 +83,7 @@ def test_clear_stacks_lose_nothing(whole, thickness_nm, wavelength_nm, view):
     assert total == pytest.approx(1, abs=ROUNDING if away_from_critical(whole, view.angle_deg) else 1e-9)
 
 
+@settings(deadline=None)
 @given(stacks(lossless=True, back=True, most=2), some_thicknesses_nm, wavelengths_nm, views())
 def test_clear_stacks_with_a_back_lose_nothing(whole, thickness_nm, wavelength_nm, view):
     assume(away_from_critical(whole, view.angle_deg))
@@ -89,6 +92,7 @@ def test_clear_stacks_with_a_back_lose_nothing(whole, thickness_nm, wavelength_n
     assert total == pytest.approx(1, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(searched=False), wavelengths_nm, clear, st.floats(0, 80), polarisations)
 def test_transmittance_is_the_same_from_both_sides(whole, wavelength_nm, below, angle_deg, polarisation):
     above = index(whole.medium).real
@@ -102,6 +106,7 @@ def test_transmittance_is_the_same_from_both_sides(whole, wavelength_nm, below, 
     assert one == pytest.approx(other, abs=1e-11)  # the way back goes at an angle that is rounded, steep towards grazing
 
 
+@settings(deadline=None)
 @given(stacks(), wavelengths_nm, views())
 def test_a_film_of_no_thickness_is_not_there(whole, wavelength_nm, view):
     assume(away_from_critical(whole, view.angle_deg))
@@ -111,6 +116,7 @@ def test_a_film_of_no_thickness_is_not_there(whole, wavelength_nm, view):
     assert seen(whole, 0.0, wavelength_nm, view)[0] == pytest.approx(bare, abs=1e-11)  # near a critical angle 1e-16 / q^2
 
 
+@settings(deadline=None)
 @given(clear, indices(), st.integers(0, 40), wavelengths_nm, angles_deg, polarisations)
 def test_a_half_wave_film_is_absent(film, below, order, wavelength_nm, angle_deg, polarisation):
     q = np.sqrt(film**2 - np.sin(np.deg2rad(angle_deg)) ** 2)
@@ -122,6 +128,7 @@ def test_a_half_wave_film_is_absent(film, below, order, wavelength_nm, angle_deg
     assert seen(stack(1, layer(film), on=below), half_waves_nm, wavelength_nm, view)[0] == pytest.approx(bare, abs=1e-11)
 
 
+@settings(deadline=None)
 @given(stacks(lossless=True), st.floats(0, 500), wavelengths_nm, st.floats(0, 45), polarisations)
 def test_a_clear_film_repeats_at_each_half_wave(whole, thickness_nm, wavelength_nm, angle_deg, polarisation):
     film = index(whole.layers[whole.searched].index).real
@@ -134,6 +141,7 @@ def test_a_clear_film_repeats_at_each_half_wave(whole, thickness_nm, wavelength_
     assert next_one == pytest.approx(one, abs=1e-9)
 
 
+@settings(deadline=None)
 @given(clear, clear, clear, wavelengths_nm)
 def test_a_quarter_wave_film_follows_its_formula(above, film, below, wavelength_nm):
     whole = stack(above, layer(film), on=below)
@@ -141,6 +149,7 @@ def test_a_quarter_wave_film_follows_its_formula(above, film, below, wavelength_
     assert seen(whole, wavelength_nm / 4 / film, wavelength_nm, View())[0] == pytest.approx(expected, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(), st.integers(0, 4), st.floats(0, 1), thicknesses_nm, wavelengths_nm, views())
 def test_a_layer_cut_in_two_is_still_one(whole, which, share, thickness_nm, wavelength_nm, view):
     assume(away_from_critical(whole, view.angle_deg))
@@ -153,6 +162,7 @@ def test_a_layer_cut_in_two_is_still_one(whole, which, share, thickness_nm, wave
     assert seen(cut, 0.0, wavelength_nm, view) == pytest.approx(seen(whole_again, 0.0, wavelength_nm, view), abs=1e-11)
 
 
+@settings(deadline=None)
 @given(stacks(), thicknesses_nm, wavelengths_nm, views())
 def test_it_does_not_matter_which_layer_is_searched(whole, thickness_nm, wavelength_nm, view):
     assume(away_from_critical(whole, view.angle_deg))
@@ -181,6 +191,7 @@ def test_reflectance_is_the_same_with_and_without_its_slope(whole, thickness_nm,
     assert seen(whole, thickness_nm, wavelength_nm, view) == pytest.approx(both, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(), st.floats(0, 500), st.floats(0.01, 3), wavelengths_nm, views())
 def test_even_steps_and_single_thicknesses_agree(whole, first_nm, step_nm, wavelength_nm, view):
     even_nm = first_nm + step_nm * np.arange(40)
@@ -189,6 +200,7 @@ def test_even_steps_and_single_thicknesses_agree(whole, first_nm, step_nm, wavel
     assert seen(whole, even_nm, wavelength_nm, view)[[0, 17, 39]] == pytest.approx(one_by_one, abs=1e-11)
 
 
+@settings(deadline=None)
 @given(stacks(), thicknesses_nm, wavelengths_nm)
 def test_s_and_p_are_one_at_normal_incidence(whole, thickness_nm, wavelength_nm):
     s, p, none = (seen(whole, thickness_nm, wavelength_nm, plain(0.0, name)) for name in ("s", "p", "none"))
@@ -196,12 +208,14 @@ def test_s_and_p_are_one_at_normal_incidence(whole, thickness_nm, wavelength_nm)
     assert s == pytest.approx(none, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(), thicknesses_nm, wavelengths_nm, angles_deg)
 def test_unpolarised_light_is_half_s_and_half_p(whole, thickness_nm, wavelength_nm, angle_deg):
     s, p, none = (seen(whole, thickness_nm, wavelength_nm, plain(angle_deg, name)) for name in ("s", "p", "none"))
     assert none == pytest.approx((s + p) / 2, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(clear, clear, wavelengths_nm)
 def test_a_face_reflects_no_p_light_at_its_brewster_angle(above, below, wavelength_nm):
     brewster_deg = float(np.rad2deg(np.arctan2(below, above)))
@@ -209,6 +223,7 @@ def test_a_face_reflects_no_p_light_at_its_brewster_angle(above, below, waveleng
     assert r == pytest.approx(0, abs=1e-25)
 
 
+@settings(deadline=None)
 @given(indices(), indices(), st.floats(0, 30), st.floats(0, 30), wavelengths_nm, views())
 def test_roughness_never_brightens_a_face(above, below, rough_nm, more_nm, wavelength_nm, view):
     above = 1.0 + 0 * above
@@ -220,6 +235,7 @@ def test_roughness_never_brightens_a_face(above, below, rough_nm, more_nm, wavel
     assert rough <= smooth + 1e-16
 
 
+@settings(deadline=None)
 @given(clear, clear, clear, st.floats(0, 40), st.floats(0, 40), thicknesses_nm, wavelengths_nm, views())
 @example(2.0, 1.0, 3.0, 1.0, 0.0, 0.0, 380.0, View(angle_deg=51.0))  # a fading field between the faces
 def test_rough_clear_films_scatter_but_never_gain(above, film, below, rough_nm, under_nm, thickness_nm, wavelength_nm, view):
@@ -229,14 +245,15 @@ def test_rough_clear_films_scatter_but_never_gain(above, film, below, rough_nm, 
     assert total[0] <= 1 + ROUNDING
 
 
-@given(indices(), indices(), wavelengths_nm, angles_deg, polarisations)
+@settings(deadline=None)
+@given(st.builds(complex, st.floats(0.05, 6), st.floats(-8, -0.05)), indices(), wavelengths_nm, angles_deg, polarisations)
 def test_an_opaque_film_hides_what_lies_below(film, below, wavelength_nm, angle_deg, polarisation):
-    assume(film.imag < -0.05)
     view = plain(angle_deg, polarisation)
     bulk = bare_reflectance(stack(1, on=film), np.array([wavelength_nm]), view)[0]
     assert seen(stack(1, layer(film), on=below), 1e6, wavelength_nm, view)[0] == pytest.approx(bulk, abs=ROUNDING)
 
 
+@settings(deadline=None)
 @given(stacks(searched=False), wavelengths_nm, st.floats(0, 89), polarisations)
 def test_amplitudes_up_and_down_are_reciprocal(whole, wavelength_nm, angle_deg, polarisation):
     assume(away_from_critical(whole, angle_deg))

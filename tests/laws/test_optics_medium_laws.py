@@ -2,7 +2,7 @@
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from films import layer
@@ -18,6 +18,7 @@ def mixed(host, inclusion, volume):
     return bruggeman(np.array([host]), np.array([inclusion]), volume)[0]
 
 
+@settings(deadline=None)
 @given(indices(), indices(), shares)
 def test_mixture_balances_its_polarisations(host, inclusion, volume):
     """The defining equation (D. A. G. Bruggeman 1935): sum f_i (e_i - e) / (e_i + 2 e) = 0."""
@@ -26,6 +27,7 @@ def test_mixture_balances_its_polarisations(host, inclusion, volume):
     assert abs(left) <= 1e-12 * max(abs(one), abs(other)) ** 2
 
 
+@settings(deadline=None)
 @given(indices(), indices(), shares)
 def test_mixture_absorbs_or_is_clear_and_never_amplifies(host, inclusion, volume):
     index = mixed(host, inclusion, volume)
@@ -33,17 +35,20 @@ def test_mixture_absorbs_or_is_clear_and_never_amplifies(host, inclusion, volume
     assert index.imag <= 0
 
 
+@settings(deadline=None)
 @given(indices(), indices())
 def test_mixture_without_inclusion_is_its_host_and_full_of_it_the_inclusion(host, inclusion):
     assert mixed(host, inclusion, 0.0) == pytest.approx(host, rel=1e-9)  # unlike metals by a factor of 1e4 in permittivity
     assert mixed(host, inclusion, 1.0) == pytest.approx(inclusion, rel=1e-9)
 
 
+@settings(deadline=None)
 @given(indices(), indices(), shares)
 def test_mixture_does_not_know_host_from_inclusion(host, inclusion, volume):
     assert mixed(host, inclusion, volume) == pytest.approx(mixed(inclusion, host, 1 - volume), rel=1e-9, abs=1e-9)
 
 
+@settings(deadline=None)
 @given(clear, clear, shares)
 def test_mixture_of_clear_materials_is_clear_and_lies_between_them(host, inclusion, volume):
     index = mixed(host, inclusion, volume)
@@ -61,6 +66,7 @@ def test_mixture_changes_without_a_jump_as_more_is_put_in(inclusion):
     assert np.max(np.abs(np.diff(e)[:100])) < 2e-3 * abs(inclusion**2 - 1.5**2)
 
 
+@settings(deadline=None)
 @given(indices(), st.floats(0.5, 2))
 def test_index_scale_multiplies_what_exceeds_vacuum_and_the_absorption(index, scale):
     scaled = layer_index(layer(index, 10.0, index_scale=scale), AT_NM)[0]
@@ -68,6 +74,7 @@ def test_index_scale_multiplies_what_exceeds_vacuum_and_the_absorption(index, sc
     assert scaled.imag == pytest.approx(scale * index.imag, abs=1e-14)
 
 
+@settings(deadline=None)
 @given(clear, st.floats(0.5, 2), st.floats(0.01, 0.99))
 def test_the_mixture_is_scaled_and_not_its_parts(index, scale, volume):
     porous = Layer(

@@ -38,7 +38,7 @@ def normal_index(index: ComplexArray, sine: float | FloatArray, smallest: float)
     square = index * index - np.square(sine)
     square = np.where(np.abs(square) < smallest, smallest, square)
     q = np.sqrt(square)
-    return np.asarray(np.where((q.imag > 0) | ((q.imag == 0) & (q.real < 0)), -q, q))
+    return np.asarray(np.where(q.imag > 0, -q, q))
 
 
 def admittance(index: ComplexArray, q: ComplexArray, polarisation: Literal["s", "p"]) -> ComplexArray:

@@ -108,3 +108,17 @@ def test_many_rows_in_blocks_are_those_of_few():
     every = reflectance(FILM, even_nm, VISIBLE_NM, View(angle_deg=25.0))
     some = reflectance(FILM, even_nm[[0, 1, 200, 599, 1200]], VISIBLE_NM, View(angle_deg=25.0))
     assert every[[0, 1, 200, 599, 1200]] == pytest.approx(some, abs=1e-13)
+
+
+def test_steps_that_are_only_nearly_even_are_taken_as_they_are():
+    nearly_nm = np.linspace(0.0, 500.0, 501)
+    nearly_nm[250] += 1e-3
+    one_by_one = [reflectance(FILM, np.array([one]), VISIBLE_NM, View())[0] for one in nearly_nm[[249, 250, 251]]]
+    assert reflectance(FILM, nearly_nm, VISIBLE_NM, View())[[249, 250, 251]] == pytest.approx(np.array(one_by_one), abs=1e-13)
+
+
+@pytest.mark.parametrize("polarisation", ["s", "p"])
+def test_all_is_reflected_exactly_at_the_critical_angle_of_the_substrate(polarisation):
+    index_below = float(np.sin(np.deg2rad(40.0)))  # to the last digit, so that q is exactly zero
+    r = bare_reflectance(stack(1, on=index_below), VISIBLE_NM, View(angle_deg=40.0, polarisation=polarisation))
+    assert r == pytest.approx(1, abs=1e-14)
