@@ -58,7 +58,7 @@ def nothing_claimed() -> Measurement:
     empty = np.full(found.flags.shape, np.nan, np.float32)
     sentence = "Nothing is claimed: 100 % of the region is off the curve; the recipe may name another film, lamp or encoding."
     return replace(
-        found, thickness_nm=empty, sigma_nm=empty, flags=flags, sentence=sentence, sites=(), verdict=None,
+        found, thickness_nm=empty, sigma_nm=empty, flags=flags, sentence=sentence, is_measured=False, sites=(), verdict=None,
         nonuniformity_percent={}, statistics=statistics(empty, empty, flags, found.region.inside),
     )  # fmt: skip
 
