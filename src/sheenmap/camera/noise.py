@@ -18,6 +18,7 @@ FOURTH_DIFFERENCE = (1.0, -4.0, 6.0, -4.0, 1.0)
 SQUARED_WEIGHTS = 70.0
 TILE = 8
 WIDE_SPACING = 3
+MOST_PIXELS, BAND_ROWS = 1_000_000, 64  # of a large picture that are looked at, in bands
 CORRELATED_RATIO = 1.15  # wide over narrow variance; white noise on 100 tiles stays under it with odds above 0.999
 SMALLEST_SHARE_OF_ROUNDING = 3.0  # below, noise is finer than a code and rounding is no longer an independent twelfth
 LARGEST_SHARE_OF_EDGES = (3.0, 2.2, 1.8, 1.6, 1.6, 1.6)  # tiles above this multiple of the line hold an edge, dust, a scratch
@@ -112,6 +113,23 @@ class _Tiles:
 
 
 def _tiles(linear: NDArray[np.floating], spacing: int, usable: NDArray[np.bool_] | None) -> _Tiles | None:
+    """Tiles of the whole picture, or of bands spread over it when it is large: some thousand tiles know the noise to 1 %."""
+    height, width = linear.shape[:2]
+    most = max(1, MOST_PIXELS // (BAND_ROWS * width))
+    if height <= BAND_ROWS * most:
+        return _band_tiles(linear, spacing, usable)
+    starts = np.linspace(0, height - BAND_ROWS, most).astype(int)
+    bands = [np.s_[start : start + BAND_ROWS] for start in starts]
+    found = [_band_tiles(linear[band], spacing, None if usable is None else usable[band]) for band in bands]
+    known = [tiles for tiles in found if tiles is not None]
+    if not known:
+        return None
+    return _Tiles(
+        level=np.concatenate([tiles.level for tiles in known]), covariance=np.concatenate([tiles.covariance for tiles in known])
+    )
+
+
+def _band_tiles(linear: NDArray[np.floating], spacing: int, usable: NDArray[np.bool_] | None) -> _Tiles | None:
     height, width = linear.shape[:2]
     if min(height, width) < 4 * spacing + TILE:
         return None

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from sheenmap.arrays import BoolArray, FloatArray
+from sheenmap.arrays import BoolArray, FloatArray, chunks
 from sheenmap.camera import Signal
 from sheenmap.inversion.likelihood import Doubts
 from sheenmap.inversion.posterior import Pixels, posterior_near
@@ -15,6 +15,7 @@ from sheenmap.lookup import Table
 WINDOW_NM = 8.0  # film does not step by more from pixel to pixel unless its colour says so
 WINDOW_IN_SCATTER = 4.0
 BETTER_CHI_SQUARE = 4.0  # by which a neighbouring region must explain an edge pixel better than its own block's
+PIECE = 400_000  # pixels that are fitted together, so that memory does not follow the picture
 NEIGHBOURS = tuple((down, right) for down in (-1, 0, 1) for right in (-1, 0, 1) if (down, right) != (0, 0))
 
 
@@ -53,10 +54,13 @@ def fit_locally(
     at_edge = _edge_blocks(planes.region).ravel()[own]
     for down, right in NEIGHBOURS:
         attempts.append(_from_neighbour(rows[at_edge], own[at_edge], planes, down, right))
-    for members, blocks in attempts:
+    pieces = [
+        (members[part], blocks[part], members is rows) for members, blocks in attempts for part in chunks(members.size, PIECE)
+    ]
+    for members, blocks, is_own in pieces:
         reference_nm, window_nm = around(members, shape, planes, blocks)
         fit = posterior_near(pixels_at(signal, angle_deg, members), table, reference_nm, window_nm, doubts)
-        better = fit.chi_square < chi_square.flat[members] - (BETTER_CHI_SQUARE if members is not rows else 0)
+        better = fit.chi_square < chi_square.flat[members] - (0.0 if is_own else BETTER_CHI_SQUARE)
         taken = members[better]
         thickness_nm.flat[taken], sigma_nm.flat[taken] = fit.thickness_nm[better], fit.sigma_nm[better]
         chi_square.flat[taken], block.flat[taken] = fit.chi_square[better], blocks[better]
