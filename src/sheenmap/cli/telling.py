@@ -10,6 +10,7 @@ if TYPE_CHECKING:
     from sheenmap.measure import Measurement
     from sheenmap.uniformity import Verdict
 
+USUAL_FORMULAS = ("half-range over mean", "sample sd over mean")  # the others stand in summary.json and in the report
 LEAST_SHOWN = 0.00005  # share of the region: below it a flag would print as 0.00 %
 
 
@@ -58,7 +59,10 @@ def _numbers(measurement: "Measurement") -> list[str]:
         measurement.title,
         f"median {found.median_nm:.2f} nm, {spread}; all pixels share u = {measurement.u_common_nm:.2g} nm",
     ]
-    for formula, percent in measurement.nonuniformity_percent.items():
+    for formula in USUAL_FORMULAS:
+        if formula not in measurement.nonuniformity_percent:
+            continue
+        percent = measurement.nonuniformity_percent[formula]
         value = "undefined" if percent is None else f"{percent:.3g} %"
         lines.append(f"nonuniformity {value} ({formula}, over sites)")
     return lines

@@ -15,7 +15,7 @@ from sheenmap.measure.notes import headline, notes
 from sheenmap.measure.preview import preview
 from sheenmap.measure.result import BudgetLine, Measurement
 from sheenmap.recipe import Recipe
-from sheenmap.uniformity import FORMULAS, SiteReading, nonuniformity, statistics
+from sheenmap.uniformity import FORMULAS, Formula, SiteReading, nonuniformity, statistics
 from sheenmap.wafer import Region
 
 LEAST_CLAIMED = 0.01  # of the region; less is no map
@@ -90,7 +90,20 @@ def _budget(
 def _formulas(readings: tuple[SiteReading, ...], recipe: Recipe) -> dict[str, float | None]:
     values = [reading.thickness_nm for reading in readings if reading.thickness_nm is not None]
     target_nm = None if recipe.tolerance is None else recipe.tolerance.target_nm
-    return {name: nonuniformity(values, name, target_nm=target_nm) for name in FORMULAS} if len(values) > 1 else {}
+    return (
+        {
+            name: nonuniformity(values, name, target_nm=target_nm)
+            for name, formula in FORMULAS.items()
+            if _is_nonuniformity(formula)
+        }
+        if len(values) > 1
+        else {}
+    )
+
+
+def _is_nonuniformity(formula: Formula) -> bool:
+    """The registry also holds plain statistics in nm, and uniformities that count the other way round."""
+    return formula.unit == "%" and not formula.name.startswith("uniformity")
 
 
 def _provenance(recipe: Recipe, shots: tuple[Frames, ...], inversion: Inversion, doubts: Doubts) -> dict[str, object]:

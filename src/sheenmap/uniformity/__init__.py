@@ -8,7 +8,7 @@ from sheenmap.uniformity.area import PixelEvidence
 from sheenmap.uniformity.components import nested_components
 from sheenmap.uniformity.conformity import conformance
 from sheenmap.uniformity.die_statistics import statistics_by_die
-from sheenmap.uniformity.formulas import FORMULAS, nonuniformity, nonuniformity_estimate
+from sheenmap.uniformity.formulas import FORMULAS, Formula, nonuniformity, nonuniformity_estimate
 from sheenmap.uniformity.gauge import gauge_study
 from sheenmap.uniformity.judge import judge, tolerance_faults
 from sheenmap.uniformity.records import Check, Outcome, SiteReading, Statistics, Verdict
@@ -20,6 +20,7 @@ from sheenmap.uniformity.tolerance import Tolerance
 __all__ = [
     "FORMULAS",
     "Check",
+    "Formula",
     "Outcome",
     "PixelEvidence",
     "SiteReading",
