@@ -62,7 +62,7 @@ def photograph(
     ratio = evaluate(table, np.nan_to_num(thickness_nm).ravel())[0].reshape(*thickness_nm.shape, 3)
     if painted is not None:
         ratio[painted[0]] = painted[1]
-    smooth = gaussian_filter(rng.normal(size=thickness_nm.shape), min(thickness_nm.shape) / 6, mode="reflect")
+    smooth = gaussian_filter(rng.normal(size=thickness_nm.shape), min(thickness_nm.shape) / 3, mode="reflect")
     shading = 1 + sensor.shading * (smooth - smooth.mean()) / smooth.std()
     gain = sensor.level / max(1.0, float(np.quantile(ratio, 0.9)))
     encoding = Encoding(kind=sensor.encoding)  # type: ignore[arg-type]
