@@ -52,7 +52,7 @@ OBSERVERS = {
     "cie-1964": ("CIE 1964 10 Degree Standard Observer", "CIE 1964 standard observer, 10 degrees"),
 }
 OF_COLOUR = f"as carried by colour-science {version('colour-science')}"
-COLOUR_LICENCE = "published standard values; this transcription BSD-3-Clause (LICENSE-colour-science.txt)"
+COLOUR_LICENCE = "published standard values; this copy of them BSD-3-Clause (LICENSE-colour-science.txt)"
 
 # Peak (nm), widths to the short and to the long side (nm) and height of the generic camera's bands: our own invention, made
 # to look like the measured ones: a main band each, a small second one in red and in blue, and an infrared filter.
