@@ -18,6 +18,7 @@ BLAME = {
     AT_LIMIT: "the best fit stands on the end of the search range: widen search_nm",
 }
 WORTH_SAYING = 0.05
+UNEVEN = 0.008  # a good blank leaves 0.3 %
 WORTH_DOUBTING = 1.7  # right set-ups stay below 1.3
 
 
@@ -56,6 +57,11 @@ def notes(recipe: Recipe, shots: tuple[Frames, ...], table: Table, inversion: In
         found.append(
             f"residuals are {inversion.misfit:.1f} times what noise and shading explain, on all of the film: "
             "lamp, camera response or index may be off by more than the uncertainty says"
+        )
+    if inversion.doubts.shading_u > UNEVEN and camera.shading_u is None:
+        found.append(
+            f"brightness differs from the table's by {100 * inversion.doubts.shading_u:.1f} % rms over the film: the exposure or "
+            "the lamp has changed since the blank, or the blank does not hold all of the shading; sigma is widened for it"
         )
     inside = inversion.flags[(inversion.flags & np.uint16(OUTSIDE.mask)) == 0]
     for flag in FLAGS:

@@ -184,3 +184,12 @@ def test_the_index_that_is_in_doubt_is_in_the_budget_and_about_proportional(tmp_
     # 1 % of n - 1 is (n - 1) / n % of the optical thickness; phases at the faces move by much less
     assert line.u_nm == pytest.approx(500 * 0.01 * (n - 1) / n, rel=0.15)
     assert line.shared
+
+
+def test_an_exposure_that_has_drifted_is_told(tmp_path):
+    photo = shoot(tmp_path, hills((200, 240)))
+    recipe = read_recipe(write_recipe(tmp_path))
+    assert not any("brightness differs" in note for note in measure(photo, recipe).notes)
+    blank = cv2.imread(str(tmp_path / "blank.png"))
+    cv2.imwrite(str(tmp_path / "blank.png"), np.rint(blank * 0.98).astype(np.uint8))
+    assert any("brightness differs" in note for note in measure(photo, recipe).notes)
