@@ -107,12 +107,14 @@ def estimate_noise(
     wide = _tiles(linear, WIDE_SPACING, usable)
     if narrow is None or wide is None:
         return Noise(read_variance=np.zeros(3), shot=np.zeros(3), correlation=np.eye(3), rounding=rounding)
-    ratio = _ratio(narrow, wide)
-    chosen = wide if ratio > CORRELATED_RATIO else narrow
-    read_variance, shot, keep = _lines(chosen, rounding)
-    spread = ratio if ratio > CORRELATED_RATIO else 1.0
-    correlation = _correlation(chosen, keep)
-    return Noise(read_variance=read_variance, shot=shot, correlation=correlation, rounding=rounding, spread=spread)
+    fine, coarse = _fitted(narrow, rounding), _fitted(wide, rounding)
+    ratio = _ratio(fine, coarse, rounding)
+    is_correlated = ratio > CORRELATED_RATIO
+    chosen = coarse if is_correlated else fine
+    return Noise(
+        read_variance=chosen.read_variance, shot=chosen.shot, correlation=_correlation(chosen.tiles, chosen.keep),
+        rounding=rounding, spread=ratio if is_correlated else 1.0,
+    )  # fmt: skip
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -188,9 +190,36 @@ def _tile_sums(values: FloatArray) -> FloatArray:
     return np.asarray(tiles.sum(axis=(1, 3)))
 
 
-def _ratio(narrow: _Tiles, wide: _Tiles) -> float:
-    medians = [np.quantile(np.trace(tiles.covariance, axis1=1, axis2=2), 0.25) for tiles in (wide, narrow)]
-    return float(medians[0] / medians[1]) if medians[1] > 0 else 1.0
+@dataclass(frozen=True, kw_only=True, eq=False)
+class _Fitted:
+    """Tiles with the line through those without an edge; ``keep`` (N,) tells which."""
+
+    tiles: _Tiles
+    read_variance: FloatArray
+    shot: FloatArray
+    keep: NDArray[np.bool_]
+
+
+def _fitted(tiles: _Tiles, rounding: Rounding | None) -> _Fitted:
+    read_variance, shot, keep = _lines(tiles, rounding)
+    return _Fitted(tiles=tiles, read_variance=read_variance, shot=shot, keep=keep)
+
+
+def _ratio(narrow: _Fitted, wide: _Fitted, rounding: Rounding | None) -> float:
+    """Variance at the wide spacing over that at the narrow one, level by level.
+
+    Only tiles without an edge are asked: wide ones meet edges oftener, which would look like noise that neighbours share.
+    """
+    medians = [_over_line(fitted.tiles, fitted.keep, narrow, rounding) for fitted in (wide, narrow)]
+    return medians[0] / medians[1] if medians[1] > 0 else 1.0
+
+
+def _over_line(tiles: _Tiles, keep: NDArray[np.bool_], line: _Fitted, rounding: Rounding | None) -> float:
+    """Median over tiles of their variance over that of a line at their level."""
+    level = np.maximum(tiles.level[keep], 0)
+    known = 0.0 if rounding is None else rounding.variance(level)
+    expected = (line.read_variance + line.shot * level + known).sum(axis=1)
+    return float(np.median(np.trace(tiles.covariance[keep], axis1=1, axis2=2) / np.maximum(expected, 1e-18)))
 
 
 def _lines(tiles: _Tiles, rounding: Rounding | None) -> tuple[FloatArray, FloatArray, NDArray[np.bool_]]:

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 from scipy.ndimage import gaussian_filter
 
-from sheenmap.camera import Encoding, encode, linear_frame
+from sheenmap.camera import Encoding, encode, estimate_noise, linear_frame
 from sheenmap.lookup import evaluate
 from simulated import film_on, ramp, table_of
 
@@ -40,6 +40,25 @@ def test_islands_with_many_edges_do_not_lift_it(seed, bits, encoding, colours):
     rng = np.random.default_rng(seed)
     frame = photographed(islands(rng, 20.0, colours), rng, bits=bits, encoding=encoding)
     assert sigma_over_truth(frame) == pytest.approx(1, abs=WITHIN)
+
+
+@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize(("size_px", "colours"), [(8.0, 2), (8.0, 3), (12.0, 5)])
+def test_edges_do_not_look_like_noise_that_neighbours_share(seed, size_px, colours):
+    """Between edges 10 to 20 pixels apart few tiles of a wide spacing are free of them."""
+    rng = np.random.default_rng(seed)
+    frame = photographed(islands(rng, size_px, colours), rng)
+    assert frame.noise.spread == 1.0
+    assert sigma_over_truth(frame) == pytest.approx(1, abs=0.07)
+
+
+@pytest.mark.parametrize("size_px", [16.0, 24.0])
+def test_noise_that_neighbours_share_is_seen_between_edges_too(size_px):
+    rng = np.random.default_rng(1)
+    white = rng.normal(0, 0.01, (480, 480, 3))
+    shared = sum(np.roll(white, (i, j), (0, 1)) for i in range(2) for j in range(2)) / 2
+    between, flat = (estimate_noise(level + shared).spread for level in (islands(rng, size_px), 0.4))
+    assert between == pytest.approx(flat, rel=0.1)
 
 
 @pytest.mark.parametrize("seed", range(3))
